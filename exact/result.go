@@ -1,0 +1,324 @@
+package exact
+
+import (
+	"fmt"
+	"math"
+
+	"example.org/barrow/graphio"
+	"example.org/barrow/graphio/shortest"
+)
+
+// A Result is the transport cost from p to q between two bounds, and what
+// proves them. Shares: a mean distance; amounts: mass times length.
+type Result struct {
+	// Lower is Σ φ(p − q) of the potential, Upper Σ ℓ|f| of the flow.
+	Lower, Upper float64
+
+	// Flow holds, by edge of the network, the mass that moves along it: above 0
+	// from From to To, below 0 the other way. It is one optimal flow among
+	// possibly many: one whose edges form no cycle.
+	Flow []float64
+
+	// Potential holds a value by node that falls by no more than the length of
+	// an edge along it, in either direction it can be travelled.
+	Potential []float64
+
+	// Unmatched holds, by node, the mass removed there (above 0) or created
+	// (below 0); nil where that is not allowed.
+	Unmatched []float64
+
+	// Optimal says that the solver ended with proof, not early.
+	Optimal bool
+
+	// Pivots is how many steps of the simplex it took.
+	Pivots int
+
+	net  *graphio.Network
+	p, q graphio.Sample
+	opt  Options
+}
+
+// Distance is the transport cost: the upper bound, as what the flow costs.
+func (r *Result) Distance() float64 { return r.Upper }
+
+// Gap is (Upper − Lower) / Upper, 0 where both are 0.
+func (r *Result) Gap() float64 {
+	if r.Upper <= r.Lower {
+		return 0
+	}
+	return (r.Upper - r.Lower) / r.Upper
+}
+
+// result reads flow and potential off the tree. Before the optimum its
+// potential is not feasible and is repaired. Cost: O(nodes + edges), with a
+// repair O(edges log nodes).
+func (s *Solver) result(p, q graphio.Sample, pivots int, optimal bool) *Result {
+	r := &Result{
+		Flow: make([]float64, s.net.Size()), Potential: make([]float64, s.net.Order()),
+		Optimal: optimal, Pivots: pivots, net: s.net, p: p, q: q, opt: s.opt,
+	}
+	if s.opt.Unmatched > 0 {
+		r.Unmatched = make([]float64, s.net.Order())
+	}
+	s.readFlow(r)
+	if optimal {
+		s.readPotential(r)
+	} else {
+		s.repairPotential(r)
+	}
+	return r
+}
+
+// readFlow sets the flow of every edge, and what it costs.
+func (s *Solver) readFlow(r *Result) {
+	t, list := &s.tree, s.net.EdgeList()
+	below := s.trueFlows()
+	var cost doubled
+	for v := range t.node {
+		x := &t.node[v]
+		f := below[v]
+		if x.parent < 0 || f == 0 {
+			continue
+		}
+		if x.edge >= int32(s.space.joined) {
+			if s.opt.Unmatched > 0 {
+				end := t.edge[x.edge].u // the other end is the extra node
+				if end != int32(v) {
+					f = -f
+				}
+				r.Unmatched[s.space.label[end]] = f
+				cost.addProduct(s.opt.Unmatched, math.Abs(f))
+			}
+			continue
+		}
+		along := f > 0 == (t.edge[x.edge].u == int32(v)) // from u to v
+		i := s.space.fwd[x.edge]
+		if !along {
+			i = s.space.bwd[x.edge]
+		}
+		f = math.Abs(f)
+		if i == noEdge { // a one-way edge backwards, which blocked reports
+			i, f = max(s.space.fwd[x.edge], s.space.bwd[x.edge]), -f
+			r.Flow[i] = f
+			continue
+		}
+		cost.addProduct(list[i].Length, f)
+		from := t.edge[x.edge].u
+		if !along {
+			from = t.edge[x.edge].v
+		}
+		if list[i].From != s.space.label[from] {
+			f = -f
+		}
+		r.Flow[i] = f
+	}
+	r.Upper = cost.value()
+}
+
+// trueFlows is the flow of each node's edge to its parent in units of mass:
+// from the integers where those are exact, otherwise from the true supplies.
+func (s *Solver) trueFlows() []float64 {
+	t := &s.tree
+	flow := make([]float64, len(t.node))
+	if s.amount == nil {
+		per := int64(len(t.node) + 1)
+		for v, x := range t.node {
+			if x.parent >= 0 {
+				flow[v] = float64((x.flow-int64(x.size))/per) * s.unit
+			}
+		}
+		return flow
+	}
+	copy(flow, s.amount)
+	for b := t.tour.head; b >= 0; b = t.tour.block[b].next {
+		for _, token := range t.tour.tokens(b) {
+			if p := t.node[token>>1].parent; token&1 == 1 && p >= 0 {
+				flow[p] += flow[token>>1]
+			}
+		}
+	}
+	return flow
+}
+
+// readPotential sets the potential, and the bound it gives: summed exactly
+// over the integers, where it is feasible without rounding.
+func (s *Solver) readPotential(r *Result) {
+	t := &s.tree
+	base := int64(0)
+	if s.opt.Unmatched > 0 {
+		base = t.tour.potential(int32(len(t.node) - 1))
+	}
+	var whole wide
+	var sum doubled
+	per := int64(len(t.node) + 1)
+	for v := range int32(len(t.node)) {
+		pot := t.tour.potential(v) - base
+		if l := s.space.label[v]; l >= 0 {
+			r.Potential[l] = float64(pot) * s.space.quantum
+		}
+		if s.amount != nil {
+			high := pot &^ (1<<30 - 1) // both halves are exact as floats
+			sum.addProduct(float64(high), s.amount[v])
+			sum.addProduct(float64(pot-high), s.amount[v])
+			continue
+		}
+		supply := s.supply[v] - 1
+		if v == t.root {
+			supply += per - 1
+		}
+		whole.addProduct(pot, supply/per)
+	}
+	r.Lower = sum.value() * s.space.quantum
+	if s.amount == nil {
+		r.Lower = whole.float() * s.space.quantum * s.unit
+	}
+	r.Lower = min(r.Lower, r.Upper) // equal but for rounding in the last place
+}
+
+// repairPotential sets the largest feasible potential below that of the tree.
+func (s *Solver) repairPotential(r *Result) {
+	t, net := &s.tree, s.net
+	for v, l := range s.space.number {
+		r.Potential[v] = float64(t.tour.potential(l)) * s.space.quantum
+	}
+	if s.opt.Unmatched > 0 {
+		// Within λ of the extra node's potential, which counts as 0.
+		base := float64(t.tour.potential(int32(len(t.node)-1))) * s.space.quantum
+		for v, pot := range r.Potential {
+			r.Potential[v] = min(max(pot-base, -s.opt.Unmatched), s.opt.Unmatched)
+		}
+	}
+	// φ may fall by ℓ along an edge: it rises by no more than ℓ against it.
+	shortest.Sweep(net, r.Potential, shortest.Backward, nil)
+	var sum doubled
+	for i, v := range r.p.Nodes {
+		sum.addProduct(r.Potential[v], r.p.Values[i]/s.per(r.p))
+	}
+	for i, v := range r.q.Nodes {
+		sum.addProduct(r.Potential[v], -r.q.Values[i]/s.per(r.q))
+	}
+	r.Lower = max(0, sum.value()-rounding(r))
+	if r.Lower == 0 {
+		clear(r.Potential)
+	}
+}
+
+func (s *Solver) per(x graphio.Sample) float64 {
+	if s.opt.Shares {
+		return x.Total()
+	}
+	return 1
+}
+
+// rounding bounds what the last places of a repaired potential may add.
+func rounding(r *Result) float64 {
+	largest := 0.0
+	for _, pot := range r.Potential {
+		largest = max(largest, math.Abs(pot))
+	}
+	mass := 2.0
+	if !r.opt.Shares {
+		mass = r.p.Total() + r.q.Total()
+	}
+	return 0x1p-50 * largest * mass
+}
+
+// blocked is a one-way edge that carries mass backwards, -1 if none does.
+func (s *Solver) blocked(r *Result) int {
+	if !s.net.Directed() {
+		return -1
+	}
+	for i, e := range s.net.EdgeList() {
+		if e.OneWay && r.Flow[i] < 0 {
+			return i
+		}
+	}
+	return -1
+}
+
+// doubled is a sum in twice the working precision (Ogita, Rump & Oishi 2005).
+type doubled struct{ hi, lo float64 }
+
+func (d *doubled) add(x float64) {
+	s := d.hi + x
+	b := s - d.hi
+	d.lo += (d.hi - (s - b)) + (x - b)
+	d.hi = s
+}
+
+func (d *doubled) addProduct(a, b float64) {
+	p := float64(a * b)
+	d.lo += math.FMA(a, b, -p)
+	d.add(p)
+}
+
+func (d *doubled) value() float64 { return d.hi + d.lo }
+
+// Verify checks the result against the network and the samples alone: that
+// the flow starts where p exceeds q and ends where q exceeds p, that one-way
+// edges are honoured, that the potential is feasible, that the bounds are what
+// flow and potential give, and, for an optimum, that they are equal to 1e-9.
+// Errors wrap ErrCertificate. Cost: O(nodes + edges).
+func (r *Result) Verify() error {
+	fail := func(format string, args ...any) error {
+		return fmt.Errorf("%w: %s", ErrCertificate, fmt.Sprintf(format, args...))
+	}
+	n := r.net.Order()
+	supply, excess := make([]float64, n), make([]doubled, n)
+	perP, perQ := 1.0, 1.0
+	if r.opt.Shares {
+		perP, perQ = r.p.Total(), r.q.Total()
+	}
+	for i, v := range r.p.Nodes {
+		supply[v] += r.p.Values[i] / perP
+	}
+	for i, v := range r.q.Nodes {
+		supply[v] -= r.q.Values[i] / perQ
+	}
+	mass, largest := 0.0, 0.0
+	var value, cost doubled
+	for v, b := range supply {
+		mass += math.Abs(b)
+		largest = max(largest, math.Abs(r.Potential[v]))
+		value.addProduct(r.Potential[v], b)
+		excess[v].add(b)
+		if r.Unmatched != nil {
+			excess[v].add(-r.Unmatched[v])
+			cost.addProduct(r.opt.Unmatched, math.Abs(r.Unmatched[v]))
+			if math.Abs(r.Potential[v]) > r.opt.Unmatched*(1+1e-12) {
+				return fail("potential %v at node %q is past the cost %v of unmatched mass", r.Potential[v], r.net.Name(v), r.opt.Unmatched)
+			}
+		}
+	}
+	slack := 0x1p-50 * largest
+	for i, e := range r.net.EdgeList() {
+		f := r.Flow[i]
+		if e.OneWay && f < 0 {
+			return fail("flow %v along one-way edge %s → %s", f, r.net.Name(int(e.From)), r.net.Name(int(e.To)))
+		}
+		excess[e.From].add(-f)
+		excess[e.To].add(f)
+		cost.addProduct(e.Length, math.Abs(f))
+		drop := r.Potential[e.From] - r.Potential[e.To]
+		if drop > e.Length+slack || !e.OneWay && -drop > e.Length+slack {
+			return fail("potential drops by %v along edge %s → %s of length %v", drop, r.net.Name(int(e.From)), r.net.Name(int(e.To)), e.Length)
+		}
+	}
+	for v := range excess {
+		if x := excess[v].value(); math.Abs(x) > 1e-12*mass {
+			return fail("flow leaves %v too much at node %q", x, r.net.Name(v))
+		}
+	}
+	near := func(a, b float64) bool { return math.Abs(a-b) <= 1e-9*r.Upper+slack*mass }
+	switch {
+	case !near(cost.value(), r.Upper):
+		return fail("the flow costs %v, not %v", cost.value(), r.Upper)
+	case value.value() < r.Lower && !near(value.value(), r.Lower):
+		return fail("the potential gives %v, not %v", value.value(), r.Lower)
+	case r.Lower > r.Upper:
+		return fail("lower bound %v above upper bound %v", r.Lower, r.Upper)
+	case r.Optimal && !(r.Upper-r.Lower <= 1e-9*r.Upper):
+		return fail("lower bound %v and upper bound %v differ", r.Lower, r.Upper)
+	}
+	return nil
+}

@@ -1,0 +1,161 @@
+package exact
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+
+	"example.org/barrow/graphio"
+)
+
+// Options say what is solved and how far.
+type Options struct {
+	// Shares compares the samples divided by their totals: the cost is then a
+	// mean distance a unit of mass. Otherwise their amounts are compared, and
+	// the cost has the unit mass times length.
+	Shares bool
+
+	// Unmatched > 0 is the cost of creating or removing a unit of mass anywhere
+	// (the Kantorovich–Rubinstein or flat norm, Hanin 1992), in the unit of
+	// length. At 0 no mass is created or removed, and totals must be equal.
+	Unmatched float64
+
+	// Gap > 0 stops once (Upper − Lower) / Upper is no more than it. At 0 the
+	// solver goes on to the proved optimum.
+	Gap float64
+}
+
+var (
+	// ErrTotals: the samples differ in total, in all or within a component, and
+	// no cost of unmatched mass was given.
+	ErrTotals = errors.New("totals differ")
+	// ErrUnreachable: one-way edges leave no way for some of the mass.
+	ErrUnreachable = errors.New("no way along the one-way edges")
+	// ErrCertificate: a result does not prove what it should. Never expected.
+	ErrCertificate = errors.New("certificate does not hold")
+)
+
+// A Solver solves pairs of samples on one network. It keeps its tree from pair
+// to pair, so similar pairs in a row are cheap. It is not safe for concurrent
+// use; a goroutine needs one of its own.
+type Solver struct {
+	net   *graphio.Network
+	opt   Options
+	space *space
+	tree  tree
+	price pricing
+
+	supply []int64   // perturbed, by solver node
+	amount []float64 // the same in units of mass; nil where integers are exact
+	unit   float64   // mass of one integer unit
+
+	part      []int32 // component of each solver node, once asked for
+	partCount int
+}
+
+// NewSolver prepares a network. Errors: an option out of range, or no node.
+// Cost: O((nodes + edges) log nodes).
+func NewSolver(net *graphio.Network, opt Options) (*Solver, error) {
+	switch {
+	case net.Order() == 0:
+		return nil, errors.New("the network has no nodes")
+	case !(opt.Unmatched >= 0) || math.IsInf(opt.Unmatched, 1):
+		return nil, fmt.Errorf("cost of unmatched mass %v; want 0 or a finite length above", opt.Unmatched)
+	case !(opt.Gap >= 0 && opt.Gap < 1):
+		return nil, fmt.Errorf("gap %v; want 0 or more and below 1", opt.Gap)
+	}
+	sp := newSpace(net, opt.Unmatched)
+	n := len(sp.label)
+	s := &Solver{net: net, opt: opt, space: sp, supply: make([]int64, n)}
+	s.tree = tree{node: make([]node, n), tour: newTour(n), edge: sp.edge}
+	s.tree.grow(sp.startEdge, sp.startOrder)
+	s.price = newPricing(len(sp.edge))
+	return s, nil
+}
+
+// Solve finds the transport cost from p to q. Both must lie on the solver's
+// network. Where ctx ends first it returns the certified interval reached so
+// far together with ctx.Err(). Errors: ErrTotals, ErrUnreachable,
+// ErrCertificate, or a sample without mass (Shares).
+func (s *Solver) Solve(ctx context.Context, p, q graphio.Sample) (*Result, error) {
+	if err := s.setSupplies(p, q); err != nil {
+		return nil, err
+	}
+	s.tree.load(s.supply)
+	pivots := 0
+	check := max(1000, len(s.tree.node)/4)
+	for {
+		i, forward, excess := s.price.next(&s.tree)
+		if excess == 0 {
+			break
+		}
+		s.tree.pivot(i, forward, excess)
+		pivots++
+		if pivots&255 == 0 && ctx.Err() != nil {
+			return s.result(p, q, pivots, false), ctx.Err()
+		}
+		if s.opt.Gap > 0 && pivots%check == 0 {
+			if r := s.result(p, q, pivots, false); r.Gap() <= s.opt.Gap {
+				return r, nil
+			}
+		}
+	}
+	r := s.result(p, q, pivots, true)
+	if e := s.blocked(r); e >= 0 {
+		edge := s.net.EdgeList()[e]
+		return nil, fmt.Errorf("from %q to %q: %w (edge %s → %s would be used backwards)",
+			p.Name, q.Name, ErrUnreachable, s.net.Name(int(edge.From)), s.net.Name(int(edge.To)))
+	}
+	if !(r.Upper-r.Lower <= 1e-9*r.Upper) {
+		return nil, fmt.Errorf("from %q to %q: %w: lower %v, upper %v", p.Name, q.Name, ErrCertificate, r.Lower, r.Upper)
+	}
+	return r, nil
+}
+
+// Solve is NewSolver and Solver.Solve for a single pair.
+func Solve(net *graphio.Network, p, q graphio.Sample, opt Options) (*Result, error) {
+	s, err := NewSolver(net, opt)
+	if err != nil {
+		return nil, err
+	}
+	return s.Solve(context.Background(), p, q)
+}
+
+// pricing looks for edges whose ends differ in potential by more than their
+// length: in blocks of edges, round and round, the largest excess of a block
+// at a time (Kovács 2015, block search).
+type pricing struct {
+	cursor, block int
+}
+
+func newPricing(edges int) pricing {
+	return pricing{block: max(24, int(math.Sqrt(float64(edges))))}
+}
+
+// next returns an edge to pivot on, whether flow goes along it from u to v,
+// and the excess; 0 if no edge has any, so the potential is feasible.
+func (p *pricing) next(t *tree) (best int32, forward bool, excess int64) {
+	left := p.block
+	for range t.edge {
+		if p.cursor == len(t.edge) {
+			p.cursor = 0
+		}
+		e := &t.edge[p.cursor]
+		drop := t.tour.potential(e.u) - t.tour.potential(e.v)
+		if d := drop - e.fwd; d > excess {
+			best, forward, excess = int32(p.cursor), true, d
+		}
+		if d := -drop - e.bwd; d > excess {
+			best, forward, excess = int32(p.cursor), false, d
+		}
+		p.cursor++
+		if left--; left == 0 {
+			if excess > 0 {
+				return best, forward, excess
+			}
+			left = p.block
+		}
+	}
+	return best, forward, excess
+}
