@@ -35,14 +35,14 @@ type stage struct {
 }
 
 // NewCascade chooses the times and levels for a network. Errors: options out
-// of range, and more scales than fit the width.
+// of range.
 // Cost: O(edges log edges + nodes), about that of twenty samples.
 func NewCascade(net *graphio.Network, opt Options) (*Cascade, error) {
 	if opt.Tolerance == 0 {
 		opt.Tolerance = 1e-6
 	}
 	if opt.Width == 0 {
-		opt.Width = 3
+		opt.Width = 2.5
 	}
 	if !(opt.Tolerance > 0 && opt.Tolerance < 1) || !(opt.Width > 0) {
 		return nil, fmt.Errorf("diffusion: tolerance %v and width %v; want a tolerance between 0 and 1 and a width above 0", opt.Tolerance, opt.Width)
@@ -62,8 +62,8 @@ func NewCascade(net *graphio.Network, opt Options) (*Cascade, error) {
 	if opt.Full {
 		s.Level = make([]int, s.Scales())
 		s.Width = s.Scales() * net.Order()
-	} else if err := c.layOut(opt.Width); err != nil {
-		return nil, err
+	} else {
+		c.layOut(opt.Width)
 	}
 	c.stage()
 	return c, nil

@@ -10,7 +10,6 @@ var (
 	_ mat.Matrix         = (*CSR)(nil)
 	_ mat.NonZeroDoer    = (*CSR)(nil)
 	_ mat.RowNonZeroDoer = (*CSR)(nil)
-	_ mat.Matrix         = mat.Transpose{}
 	_ mat.ColNonZeroDoer = csrTransposed{}
 	_ mat.NonZeroDoer    = csrTransposed{}
 	_ mat.Matrix         = csrTransposed{}

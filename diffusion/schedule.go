@@ -1,7 +1,6 @@
 package diffusion
 
 import (
-	"fmt"
 	"math"
 	"math/rand/v2"
 )
@@ -12,8 +11,9 @@ type Options struct {
 	// grows with the square root of the longest time and whose memory with the
 	// number of scales.
 	Full bool
-	// Width is how many values a sample may take, in multiples of the number
-	// of nodes; 0 stands for 3. With Full it has no effect.
+	// Width is how many values a sample should take at most, in multiples of
+	// the number of nodes; 0 stands for 2.5. Networks with many components may
+	// need more. With Full it has no effect.
 	Width float64
 	// Tolerance of the truncation of each Chebyshev series; 0 stands for 1e-6,
 	// about what float32 holds.
@@ -58,49 +58,48 @@ func (s *Schedule) dyadic() {
 }
 
 // losses are tried in turn until the scales fit the width asked for.
-var losses = []float64{0.02, 0.05, 0.1, 0.15, 0.2, 0.3, 0.5, 1}
+var losses = []float64{0.02, 0.05, 0.1, 0.15, 0.2, 0.25, 0.3, 0.35, 0.4, 0.5, 0.6, 1}
 
 // layOut chooses the level of each scale. A scale moves up a level where that
 // costs its L1 norm no more than loss, judged on pairs of point masses sent
-// through the cascade.
-func (c *Cascade) layOut(width float64) error {
+// through the cascade; scale k lies on level k at most, that is on about
+// nodes/2^k aggregates. The last loss allows every move, and stands even where
+// it does not fit.
+func (c *Cascade) layOut(width float64) {
 	s := &c.Schedule
 	for _, s.Loss = range losses {
-		c.chooseLevels()
-		s.Width = 0
-		for _, l := range s.Level {
-			s.Width += c.h.walks[l].Order()
-		}
-		if float64(s.Width) <= width*float64(c.h.walks[0].Order()) {
-			return nil
+		if c.chooseLevels(int(width * float64(c.Order()))) {
+			return
 		}
 	}
-	return fmt.Errorf("diffusion: %d scales take %d values a sample for %d nodes, more than %g a node; want a larger width",
-		s.Scales(), s.Width, c.h.walks[0].Order(), width)
 }
 
-func (c *Cascade) chooseLevels() {
+// chooseLevels reports whether the scales fit the width. It gives up on the
+// way where they do not, unless nothing is left to try.
+func (c *Cascade) chooseLevels(width int) (fits bool) {
 	s := &c.Schedule
-	y := c.pairs()
-	level := 0
-	s.Level = append(s.Level[:0], 0)
-	z := c.advance(y, level, s.Times[0])
-	y = z
+	y, level := c.advance(c.pairs(), 0, s.Times[0]), 0
+	s.Level, s.Width = append(s.Level[:0], 0), c.Order()
 	for k := 1; k < len(s.Times); k++ {
-		z = c.advance(y, level, s.Times[k]-s.Times[k-1])
+		t := s.Times[k] - s.Times[k-1]
+		z := c.advance(y, level, t)
 		whole := differences(y, z)
-		for level+1 < c.h.Levels() {
+		for level+1 < min(k+1, c.h.Levels()) {
 			up := restricted(c.h, y, level, level+1)
-			upZ := c.advance(up, level+1, s.Times[k]-s.Times[k-1])
+			upZ := c.advance(up, level+1, t)
 			if kept(differences(up, upZ), whole) < 1-s.Loss {
 				break
 			}
 			y, z, level = up, upZ, level+1
 		}
-		s.Level = append(s.Level, level)
+		s.Level, s.Width = append(s.Level, level), s.Width+len(y)/lanes
+		if s.Width > width && s.Loss < 1 {
+			return false
+		}
 		y = z
 	}
-	s.Level = append(s.Level, level)
+	s.Level, s.Width = append(s.Level, level), s.Width+len(y)/lanes
+	return s.Width <= width
 }
 
 func restricted(h *Hierarchy, x []float32, from, to int) []float32 {

@@ -19,8 +19,9 @@ type Options struct {
 	// Full computes every scale on the network itself instead of on coarser
 	// levels: the reference, dearer by far.
 	Full bool
-	// Width bounds the length of a sample's vector, in multiples of the number
-	// of nodes; 0 stands for 3. It has no effect with Full.
+	// Width is how long a sample's vector should be at most, in multiples of
+	// the number of nodes; 0 stands for 2.5. Networks with many components may
+	// need more. It has no effect with Full.
 	Width float64
 	// Tolerance of the heat kernels, relative; 0 stands for 1e-6.
 	Tolerance float64
