@@ -22,6 +22,10 @@ type space struct {
 	joined   int     // first edge that is none of the network's
 	quantum  float64 // length of one integer unit
 
+	// unmatched is the cost of unmatched mass the solver works with: a larger
+	// one changes no flow, and the cost by a multiple of the difference.
+	unmatched float64
+
 	startEdge, startOrder []int32 // the tree to start from, as tree.grow wants it
 }
 
@@ -34,15 +38,30 @@ func newSpace(net *graphio.Network, unmatched float64) *space {
 	roots, via, reach := paths(net)
 	s := &space{}
 	s.numberAlong(net, roots, via)
-	oneWay := 0.0
+	oneWay, around := 0.0, 2*reach
 	if net.Directed() {
-		oneWay = backwardPenalty(net, roots)
+		oneWay, around = backwardPenalty(net, roots)
 	}
-	unit := s.scale(net, unmatched, reach, oneWay)
+	// Where every node can reach every other of its component for less than the
+	// cost of removing mass here and creating it there, none is.
+	s.unmatched = unmatched
+	if unmatched > around {
+		s.unmatched = around
+	}
+	// Where it is far less, no mass goes far: then the extra node is the middle
+	// of the tree to start from, and lengths need not reach across the network.
+	near := unmatched > 0 && s.unmatched < reach/8
+	if near {
+		reach = s.unmatched
+	}
+	unit := s.scale(net, s.unmatched, reach, oneWay)
 	s.layEdges(net, via, unit, int64(math.Ceil(oneWay/s.quantum))+1)
-	if unmatched > 0 {
-		s.joinToExtra(roots, unit(unmatched))
-	} else {
+	switch {
+	case near:
+		s.joinAround(unit(s.unmatched))
+	case unmatched > 0:
+		s.joinToExtra(roots, unit(s.unmatched))
+	default:
 		s.joinRoots(roots)
 	}
 	return s
@@ -104,9 +123,9 @@ func across(net *graphio.Network, i, v int32) int32 {
 }
 
 // backwardPenalty is a cost at which no optimal flow uses a one-way edge
-// backwards, if it can do without: more than the longest way around.
-func backwardPenalty(net *graphio.Network, roots []int32) float64 {
-	around := 0.0
+// backwards, if it can do without: more than the longest way around, which is
+// +Inf where some node cannot reach some other of its component.
+func backwardPenalty(net *graphio.Network, roots []int32) (penalty, around float64) {
 	for _, dir := range []shortest.Direction{shortest.Forward, shortest.Backward} {
 		dist := make([]float64, net.Order())
 		for v := range dist {
@@ -123,13 +142,12 @@ func backwardPenalty(net *graphio.Network, roots []int32) float64 {
 		around += longest
 	}
 	if !math.IsInf(around, 1) {
-		return around * (1 + 1e-9)
+		return around * (1 + 1e-9), around
 	}
-	sum := 0.0 // not every node reaches every other: more than any path
 	for _, e := range net.EdgeList() {
-		sum += e.Length
+		penalty += e.Length
 	}
-	return sum * (1 + 1e-9)
+	return penalty * (1 + 1e-9), around // more than any path
 }
 
 // numberAlong numbers the nodes in preorder of the tree of each component,
@@ -275,11 +293,7 @@ func (s *space) joinRoots(roots []int32) {
 // joinToExtra adds the node that takes up unmatched mass, joined to every
 // other, and hangs the roots of all components but the first from it.
 func (s *space) joinToExtra(roots []int32, unmatched int64) {
-	extra := int32(len(s.label))
-	for v := range extra {
-		s.join(v, extra, unmatched)
-	}
-	s.label = append(s.label, -1)
+	extra := s.addExtra(unmatched)
 	joint := func(r int32) int32 { return int32(s.joined) + s.number[r] }
 	s.startEdge = append(s.startEdge, joint(roots[0]))
 	for _, r := range roots[1:] {
@@ -292,6 +306,26 @@ func (s *space) joinToExtra(roots []int32, unmatched int64) {
 			s.startOrder = append(s.startOrder, v)
 		}
 	}
+}
+
+// joinAround adds that node as the root, with every other below it.
+func (s *space) joinAround(unmatched int64) {
+	extra := s.addExtra(unmatched)
+	s.startOrder = append(s.startOrder, extra)
+	for v := range extra {
+		s.startEdge[v] = int32(s.joined) + v
+		s.startOrder = append(s.startOrder, v)
+	}
+	s.startEdge = append(s.startEdge, noEdge)
+}
+
+func (s *space) addExtra(unmatched int64) (extra int32) {
+	extra = int32(len(s.label))
+	for v := range extra {
+		s.join(v, extra, unmatched)
+	}
+	s.label = append(s.label, -1)
+	return extra
 }
 
 func (s *space) join(u, v int32, length int64) int32 {
