@@ -18,7 +18,10 @@ import (
 // Chebyshev recursion. Every scale is linear in x, and the last one and the
 // sum of all keep the mass. With Options.Full there is one stage, on the
 // network itself, and H is its heat kernel; otherwise H is the product of the
-// kernels and sums passed through, which is what the scales are defined by.
+// kernels and sums passed through, which is what the scales are defined by. On
+// road-like and neighbour networks a scale then differs from the full one,
+// summed over the same aggregates, by 0.2 to 0.3 of its L1 norm in the mean (at
+// most 0.35 in tests).
 //
 // A Cascade does not change once made, so any number of goroutines may use it.
 type Cascade struct {

@@ -8,7 +8,8 @@ import (
 // coarsen joins the nodes of w into aggregates of two or a few and returns the
 // walk of the aggregates, with the aggregate of each node. Aggregates are
 // numbered by their first node, and never reach across components. The walk
-// keeps the clock of w: exp(-tL) of both describe the same time.
+// keeps the clock of w, but for what setClocks adds: exp(-tL) of both describe
+// the same time.
 //
 // Cost: O(links log links + nodes) time.
 func coarsen(w *Walk) (coarse *Walk, parent []int32) {
@@ -97,12 +98,7 @@ const (
 // difference of the functions' means.
 func (w *Walk) crossings(parent []int32, capacity []float64) []link {
 	f := w.smooth()
-	mean := make([]float64, len(capacity)*probes)
-	for u, a := range parent {
-		for j := range probes {
-			mean[int(a)*probes+j] += float64(w.capacity[u] / capacity[a] * f[u*probes+j])
-		}
-	}
+	mean := w.means(f, parent, capacity)
 	list := w.fluxes(parent, len(capacity), f, mean)
 	var flow, energy float64
 	for _, c := range list {
@@ -120,6 +116,17 @@ func (w *Walk) crossings(parent []int32, capacity []float64) []link {
 		links[i] = link{c.a, c.b, factor * c.weight}
 	}
 	return links
+}
+
+// means averages functions, nodes × probes, over aggregates.
+func (w *Walk) means(f []float64, parent []int32, capacity []float64) []float64 {
+	mean := make([]float64, len(capacity)*probes)
+	for u, a := range parent {
+		for j := range probes {
+			mean[int(a)*probes+j] += float64(w.capacity[u] / capacity[a] * f[u*probes+j])
+		}
+	}
+	return mean
 }
 
 // crossing gathers the links between two aggregates: their total weight, the
@@ -172,19 +179,28 @@ func (w *Walk) fluxes(parent []int32, count int, f, mean []float64) []crossing {
 	return list
 }
 
-// smooth returns a few smooth random functions, nodes × probes: signs, then
-// sweeps of averaging with the neighbours, f <- (I - Lᵀ/bound) f.
+// smooth returns a few smooth random functions, nodes × probes.
 func (w *Walk) smooth() []float64 {
 	rng := rand.New(rand.NewPCG(1, 2)) // fixed: the hierarchy is part of the method
-	f, g := make([]float64, w.Order()*probes), make([]float64, w.Order()*probes)
+	f := make([]float64, w.Order()*probes)
 	for i := range f {
 		f[i] = float64(1 - 2*int(rng.Uint64()&1))
 	}
+	return w.smoothed(f)
+}
+
+// smoothed averages functions, nodes × probes, with their neighbours again and
+// again: f <- (I - Lᵀ/bound) f. It takes f over.
+func (w *Walk) smoothed(f []float64) []float64 {
+	if w.bound == 0 {
+		return f
+	}
+	g := make([]float64, len(f))
 	for range sweeps {
 		for u := range w.Order() {
 			row := (*[probes]float64)(g[u*probes:])
 			own := (*[probes]float64)(f[u*probes:])
-			stay := 1 - w.rate[u]/max(w.bound, 1e-300)
+			stay := 1 - w.rate[u]/w.bound
 			for j := range row {
 				row[j] = stay * own[j]
 			}

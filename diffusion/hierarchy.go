@@ -9,7 +9,7 @@ type Hierarchy struct {
 	parent [][]int32
 }
 
-// smallest is the size below which a level is not made coarser.
+// smallest is the size up to which a level is not made coarser.
 const smallest = 32
 
 // NewHierarchy coarsens a walk level by level. It is the same for the same
@@ -25,6 +25,7 @@ func NewHierarchy(w *Walk) *Hierarchy {
 		h.walks, h.parent = append(h.walks, coarse), append(h.parent, parent)
 		w = coarse
 	}
+	h.setClocks()
 	return h
 }
 
