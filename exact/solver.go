@@ -42,7 +42,8 @@ var (
 )
 
 // A Solver solves pairs of samples on one network. It keeps its tree from pair
-// to pair, so similar pairs in a row are cheap. It is not safe for concurrent
+// to pair, so similar pairs in a row are cheap; where the pairs are not, it
+// starts anew. It is not safe for concurrent
 // use; a goroutine needs one of its own.
 type Solver struct {
 	net   *graphio.Network
@@ -54,6 +55,9 @@ type Solver struct {
 	supply []int64   // perturbed, by solver node
 	amount []float64 // the same in units of mass; nil where integers are exact
 	unit   float64   // mass of one integer unit
+
+	warm bool      // the tree is of a pair before
+	flow []float64 // scratch of startCost
 
 	part      []int32 // component of each solver node, once asked for
 	partCount int
@@ -88,6 +92,11 @@ func (s *Solver) Solve(ctx context.Context, p, q graphio.Sample) (*Result, error
 		return nil, err
 	}
 	s.tree.load(s.supply)
+	if s.warm && s.startCost() < s.cost() {
+		s.tree.grow(s.space.startEdge, s.space.startOrder)
+		s.tree.load(s.supply)
+	}
+	s.warm = true
 	pivots := 0
 	early := stopRule{gap: s.opt.Gap, every: max(256, len(s.tree.node)/20), last: math.Inf(1)}
 	watch := watcher{call: s.opt.Watch, since: time.Now()}
@@ -136,7 +145,7 @@ func (e *stopRule) due(pivots int, s *Solver) bool {
 		return false
 	}
 	cost := s.cost()
-	due := e.last-cost <= 2*e.gap*cost
+	due := e.last-cost <= e.gap*cost
 	e.last = cost
 	return due
 }
@@ -167,6 +176,32 @@ func (s *Solver) cost() float64 {
 		if x := &s.tree.node[v]; x.parent >= 0 {
 			cost += float64(abs(x.flow)) * float64(abs(s.tree.rise(int32(v))))
 		}
+	}
+	return cost
+}
+
+// startCost is the cost of the same supplies on the tree to start from cold.
+func (s *Solver) startCost() float64 {
+	if s.flow == nil {
+		s.flow = make([]float64, len(s.supply))
+	}
+	for v, b := range s.supply {
+		s.flow[v] = float64(b)
+	}
+	cost := 0.0
+	for i := len(s.space.startOrder) - 1; i >= 0; i-- {
+		v := s.space.startOrder[i]
+		k := s.space.startEdge[v]
+		if k == noEdge {
+			continue
+		}
+		e := &s.tree.edge[k]
+		length := e.fwd
+		if (e.u == v) != (s.flow[v] > 0) {
+			length = e.bwd
+		}
+		cost += math.Abs(s.flow[v]) * float64(length)
+		s.flow[e.u^e.v^v] += s.flow[v]
 	}
 	return cost
 }

@@ -49,9 +49,14 @@ func Sweep(net *graphio.Network, dist []float64, dir Direction, via []int32) {
 		if via != nil {
 			via[v] = -1
 		}
-		if !math.IsInf(dist[v], 1) {
-			h.at[v] = int32(len(h.node))
-			h.node = append(h.node, int32(v))
+		// A node that lowers no neighbour has no part in the sweep unless it is
+		// lowered itself: for a potential that is nearly feasible, most do not.
+		for _, a := range arcs(v) {
+			if dist[v]+edges[a.Edge].Length < dist[a.Node] {
+				h.at[v] = int32(len(h.node))
+				h.node = append(h.node, int32(v))
+				break
+			}
 		}
 	}
 	for i := len(h.node)/arity + 1; i >= 0; i-- {
