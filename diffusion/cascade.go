@@ -128,6 +128,9 @@ func (p *Panel[F]) Input(c *Cascade) []F {
 // the scale's level, valid only during the call. after is nil for the last
 // scale. What happens in one lane does not depend on the others.
 //
+// Rounding adds about 1e-7 for every step of the walk on the level where a
+// scale lives, which matters for Full at long times only.
+//
 // Cost: O((nodes + edges) Lanes), some 30 times the product of the walk with a
 // block on a road network; memory 4·Lanes bytes a node for each of five or so
 // blocks.

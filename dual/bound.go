@@ -2,6 +2,7 @@ package dual
 
 import (
 	"math"
+	"slices"
 
 	"example.org/barrow/graphio"
 	"example.org/barrow/graphio/shortest"
@@ -35,6 +36,40 @@ func Repair(net *graphio.Network, potential []float64) []float64 {
 	repaired := append([]float64(nil), potential...)
 	shortest.Sweep(net, repaired, shortest.Backward, nil)
 	return repaired
+}
+
+// Certify makes the best lower bound it can of a potential of any scale: it
+// repairs multiples of the potential, from the one that is feasible as it is
+// upwards by factors of 2 until the bound falls, and returns the best bound
+// with its feasible potential. Bounds below 0 become 0, by the potential 0.
+// p and q have equal totals. Cost: ten or so repairs.
+func Certify(net *graphio.Network, potential []float64, p, q graphio.Sample) (lower float64, feasible []float64) {
+	feasible = make([]float64, len(potential))
+	steepest := 0.0
+	for _, e := range net.EdgeList() {
+		slope := (potential[e.From] - potential[e.To]) / e.Length
+		if !e.OneWay {
+			slope = math.Abs(slope)
+		}
+		steepest = max(steepest, slope)
+	}
+	if steepest == 0 {
+		return 0, feasible
+	}
+	scaled := make([]float64, len(potential))
+	least := slices.Min(potential) // taken off, so that large factors lose no digits
+	for factor, falls := 1/steepest, 0; falls < 2; factor *= 2 {
+		for v, x := range potential {
+			scaled[v] = factor * (x - least)
+		}
+		repaired := Repair(net, scaled)
+		if bound := LowerBound(repaired, p, q); bound > lower {
+			lower, feasible, falls = bound, repaired, 0
+		} else {
+			falls++
+		}
+	}
+	return lower, feasible
 }
 
 // merge calls do for every node where p or q has mass, in node order.

@@ -2,7 +2,8 @@ package dual
 
 // An Embedding holds one vector a sample: the scales of a Multiscale side by
 // side, unweighted, in the unit of the masses. Vectors is row-major, Rows ×
-// Width.
+// Width. In float32, samples that differ by less than some 1e-6 of their mass
+// are told apart from equal ones but not measured.
 type Embedding struct {
 	Scales  []Scale
 	Width   int
