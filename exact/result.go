@@ -106,7 +106,7 @@ func (s *Solver) readFlow(r *Result) {
 		if x.parent < 0 || f == 0 {
 			continue
 		}
-		if x.edge >= int32(s.space.joined) {
+		if !s.space.own(x.edge) {
 			if s.opt.Unmatched > 0 {
 				end := t.edge[x.edge].u // the other end is the extra node
 				if end != int32(v) {

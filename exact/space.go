@@ -19,7 +19,6 @@ type space struct {
 	fwd, bwd []int32 // network edge that serves u → v, and v → u; -1 for none
 	number   []int32 // solver node of each network node
 	label    []int32 // network node of each solver node, -1 for the extra node
-	joined   int     // first edge that is none of the network's
 	quantum  float64 // length of one integer unit
 
 	// unmatched is the cost of unmatched mass the solver works with: a larger
@@ -48,20 +47,15 @@ func newSpace(net *graphio.Network, unmatched float64) *space {
 	if unmatched > around {
 		s.unmatched = around
 	}
-	// Where it is far less, no mass goes far: then the extra node is the middle
-	// of the tree to start from, and lengths need not reach across the network.
-	near := unmatched > 0 && s.unmatched < reach/8
+	near := 0 < s.unmatched && s.unmatched < reach/16
 	if near {
-		reach = s.unmatched
+		reach = s.unmatched // no mass goes farther than twice that
 	}
 	unit := s.scale(net, s.unmatched, reach, oneWay)
 	s.layEdges(net, via, unit, int64(math.Ceil(oneWay/s.quantum))+1)
-	switch {
-	case near:
-		s.joinAround(unit(s.unmatched))
-	case unmatched > 0:
-		s.joinToExtra(roots, unit(s.unmatched))
-	default:
+	if unmatched > 0 {
+		s.hangFromExtra(unit(s.unmatched), near)
+	} else {
 		s.joinRoots(roots)
 	}
 	return s
@@ -277,7 +271,6 @@ func (s *space) layEdges(net *graphio.Network, via []int32, unit func(float64) i
 			among[e.v] = 0
 		}
 	}
-	s.joined = len(s.edge)
 }
 
 // joinRoots makes one tree of the components, by edges between their roots.
@@ -290,43 +283,26 @@ func (s *space) joinRoots(roots []int32) {
 	}
 }
 
-// joinToExtra adds the node that takes up unmatched mass, joined to every
-// other, and hangs the roots of all components but the first from it.
-func (s *space) joinToExtra(roots []int32, unmatched int64) {
-	extra := s.addExtra(unmatched)
-	joint := func(r int32) int32 { return int32(s.joined) + s.number[r] }
-	s.startEdge = append(s.startEdge, joint(roots[0]))
-	for _, r := range roots[1:] {
-		s.startEdge[s.number[r]] = joint(r)
-	}
-	main := s.number[roots[0]]
-	s.startOrder = append(s.startOrder, main, extra)
-	for v := range extra {
-		if v != main {
-			s.startOrder = append(s.startOrder, v)
-		}
-	}
-}
-
-// joinAround adds that node as the root, with every other below it.
-func (s *space) joinAround(unmatched int64) {
-	extra := s.addExtra(unmatched)
+// hangFromExtra adds the node that takes up unmatched mass as the root. Where
+// its edges are short against the network, every node hangs from it by its own,
+// otherwise only the trees of shortest paths do: of the two starts the better,
+// as measured; cutting the trees into pieces was worse than one or the other.
+func (s *space) hangFromExtra(unmatched int64, near bool) {
+	extra := int32(len(s.label))
+	s.label = append(s.label, noEdge)
 	s.startOrder = append(s.startOrder, extra)
 	for v := range extra {
-		s.startEdge[v] = int32(s.joined) + v
 		s.startOrder = append(s.startOrder, v)
+		k := s.join(v, extra, unmatched)
+		if near || s.startEdge[v] == noEdge {
+			s.startEdge[v] = k
+		}
 	}
 	s.startEdge = append(s.startEdge, noEdge)
 }
 
-func (s *space) addExtra(unmatched int64) (extra int32) {
-	extra = int32(len(s.label))
-	for v := range extra {
-		s.join(v, extra, unmatched)
-	}
-	s.label = append(s.label, -1)
-	return extra
-}
+// own reports whether edge k is one of the network's.
+func (s *space) own(k int32) bool { return s.fwd[k] != noEdge || s.bwd[k] != noEdge }
 
 func (s *space) join(u, v int32, length int64) int32 {
 	s.edge = append(s.edge, edge{u: u, v: v, fwd: length, bwd: length})
