@@ -28,11 +28,10 @@ type Arc struct {
 // As a gonum graph (see Node, From, Weight, …) it is the network without its
 // directions; AsDirected is the view that honours them.
 //
-// Memory: 32 bytes an edge and 32 bytes a node, plus the names, plus 8 bytes
-// for every end of an edge (twice that where some edge is one-way).
+// Memory: 32 bytes an edge, 50 to 80 bytes and the name a node, and 8 bytes for
+// every end of an edge (three times that where some edge is one-way).
 type Network struct {
-	names    []string
-	index    map[string]int32
+	names    *nameTable
 	edges    []Edge
 	all      adjacency
 	out, in  adjacency // the same as all where no edge is one-way
@@ -55,7 +54,6 @@ type adjacency struct {
 // twice, edges to no node, self-loops, duplicates, and lengths or weights that
 // are not positive and finite. Cost: O(nodes + edges).
 func NewNetwork(names []string, edges []Edge) (*Network, error) {
-	n := &Network{names: names, edges: edges, index: make(map[string]int32, len(names))}
 	if len(names) > math.MaxInt32 || len(edges) > math.MaxInt32 {
 		return nil, fmt.Errorf("a network of %d nodes and %d edges is past the limit of 2^31-1 of each", len(names), len(edges))
 	}
@@ -64,11 +62,11 @@ func NewNetwork(names []string, edges []Edge) (*Network, error) {
 		if name == "" {
 			faults.Add(Fault{Found: fmt.Sprintf("no name for node number %d", v+1), Want: "a name for each node"})
 		}
-		if _, twice := n.index[name]; twice {
-			faults.Add(Fault{Found: fmt.Sprintf("node %q twice", name), Want: "each node once"})
-		}
-		n.index[name] = int32(v)
 	}
+	n := &Network{edges: edges}
+	n.names = tableOf(names, func(v int) {
+		faults.Add(Fault{Found: fmt.Sprintf("node %q twice", names[v]), Want: "each node once"})
+	})
 	for i, e := range edges {
 		if what, want := n.edgeFault(e); what != "" {
 			faults.Add(Fault{Found: fmt.Sprintf("edge number %d: %s", i+1, what), Want: want})
@@ -81,7 +79,7 @@ func NewNetwork(names []string, edges []Edge) (*Network, error) {
 	for _, d := range n.duplicates() {
 		e := edges[d.again]
 		faults.Add(Fault{
-			Found: fmt.Sprintf("edge number %d joins %q and %q, as edge number %d does", d.again+1, names[e.From], names[e.To], d.first+1),
+			Found: fmt.Sprintf("edge number %d joins %q and %q, as edge number %d does", d.again+1, n.Name(int(e.From)), n.Name(int(e.To)), d.first+1),
 			Want:  "each edge once",
 		})
 	}
@@ -92,12 +90,12 @@ func NewNetwork(names []string, edges []Edge) (*Network, error) {
 }
 
 func (n *Network) edgeFault(e Edge) (found, want string) {
-	order := int32(len(n.names))
+	order := int32(n.Order())
 	switch {
 	case e.From < 0 || e.From >= order || e.To < 0 || e.To >= order:
 		return fmt.Sprintf("joins nodes %d and %d of %d", e.From, e.To, order), "nodes from 0 to one less than their number"
 	case e.From == e.To:
-		return fmt.Sprintf("a self-loop at %q", n.names[e.From]), "two different ends"
+		return fmt.Sprintf("a self-loop at %q", n.Name(int(e.From))), "two different ends"
 	case !positive(e.Length):
 		return fmt.Sprintf("length %v", e.Length), "a finite length above 0"
 	case !positive(e.Weight):
@@ -125,7 +123,7 @@ func (n *Network) connect() {
 // adjacency lists each edge at the ends that keep names (from, to), in edge
 // order within each node.
 func (n *Network) adjacency(keep func(Edge) (atFrom, atTo bool)) adjacency {
-	a := adjacency{start: make([]int, len(n.names)+1)}
+	a := adjacency{start: make([]int, n.Order()+1)}
 	for _, e := range n.edges {
 		f, t := keep(e)
 		if f {
@@ -135,11 +133,11 @@ func (n *Network) adjacency(keep func(Edge) (atFrom, atTo bool)) adjacency {
 			a.start[e.To+1]++
 		}
 	}
-	for v := range n.names {
+	for v := range n.Order() {
 		a.start[v+1] += a.start[v]
 	}
-	a.arc = make([]Arc, a.start[len(n.names)])
-	next := make([]int, len(n.names))
+	a.arc = make([]Arc, a.start[n.Order()])
+	next := make([]int, n.Order())
 	copy(next, a.start)
 	for i, e := range n.edges {
 		f, t := keep(e)
@@ -161,8 +159,8 @@ type duplicate struct{ first, again int32 }
 // Cost: O(edges), whatever the degrees.
 func (n *Network) duplicates() []duplicate {
 	var found []duplicate
-	seen := make([]int32, len(n.names)) // edge + 1 by which the node was reached from v
-	for v := range n.names {
+	seen := make([]int32, n.Order()) // edge + 1 by which the node was reached from v
+	for v := range n.Order() {
 		arcs := n.OutArcs(v)
 		for _, a := range arcs {
 			if s := seen[a.Node]; s != 0 && s-1 != a.Edge {
@@ -183,7 +181,7 @@ func (n *Network) duplicates() []duplicate {
 }
 
 // Order is the number of nodes.
-func (n *Network) Order() int { return len(n.names) }
+func (n *Network) Order() int { return len(n.names.names) }
 
 // Size is the number of edges.
 func (n *Network) Size() int { return len(n.edges) }
@@ -192,12 +190,12 @@ func (n *Network) Size() int { return len(n.edges) }
 func (n *Network) Directed() bool { return n.directed }
 
 // Name is the name of node v.
-func (n *Network) Name(v int) string { return n.names[v] }
+func (n *Network) Name(v int) string { return n.names.names[v] }
 
 // Index is the number of the named node, and whether there is one.
 func (n *Network) Index(name string) (v int, ok bool) {
-	i, ok := n.index[name]
-	return int(i), ok
+	i := n.names.findString(name)
+	return max(0, int(i)), i >= 0
 }
 
 // EdgeList is every edge, in order. It is the network's own: do not change it.

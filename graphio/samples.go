@@ -3,7 +3,6 @@ package graphio
 import (
 	"fmt"
 	"math"
-	"sort"
 )
 
 // A Sample is a named non-negative distribution of mass over the nodes of a
@@ -62,6 +61,7 @@ type Samples struct {
 	list  []Sample
 	index map[string]int
 	order int
+	path  string // of the file they were read from
 }
 
 // NewSamples checks and holds samples over a network of order nodes. Errors:
@@ -128,31 +128,13 @@ func (s *Samples) Names() []string {
 // Shares is the same samples, each divided by its total. Errors: Faults that
 // name every sample without mass.
 func (s *Samples) Shares() (*Samples, error) {
-	shares := &Samples{list: make([]Sample, len(s.list)), index: s.index, order: s.order}
+	shares := &Samples{list: make([]Sample, len(s.list)), index: s.index, order: s.order, path: s.path}
 	var faults FaultList
 	for i := range s.list {
 		if len(s.list[i].Nodes) == 0 {
-			faults.Add(Fault{Found: fmt.Sprintf("sample %q has no mass", s.list[i].Name), Want: "some mass in every sample, or amounts (--mass amount)"})
+			faults.Add(Fault{File: s.path, Found: fmt.Sprintf("sample %q has no mass", s.list[i].Name), Want: "some mass in every sample, or amounts (--mass amount)"})
 		}
 		shares.list[i] = s.list[i].Share()
 	}
 	return shares, faults.Err()
-}
-
-// sortByNode puts the entries of a sample in node order, as readers collect
-// them in file order.
-func (s *Sample) sortByNode() {
-	if sort.SliceIsSorted(s.Nodes, func(i, j int) bool { return s.Nodes[i] < s.Nodes[j] }) {
-		return
-	}
-	order := make([]int, len(s.Nodes))
-	for i := range order {
-		order[i] = i
-	}
-	sort.Slice(order, func(i, j int) bool { return s.Nodes[order[i]] < s.Nodes[order[j]] })
-	nodes, values := make([]int32, len(order)), make([]float64, len(order))
-	for i, k := range order {
-		nodes[i], values[i] = s.Nodes[k], s.Values[k]
-	}
-	s.Nodes, s.Values = nodes, values
 }
