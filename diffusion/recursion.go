@@ -128,9 +128,27 @@ func (s *stepper[F]) step(next, current, previous []F, factor F, acc [][]F, coef
 	}
 }
 
-// stepPanel is step for panels of lanes samples, with rows of fixed size.
+// strip is how many rows of a panel are stepped before the sums take them: few
+// enough to stay in the first cache.
+const strip = 128
+
+// stepPanel is step for panels of lanes samples.
 func (s *stepper[F]) stepPanel(next, current, previous []F, factor F, acc [][]F, coefficient []F) {
-	for u := range len(s.start) - 1 {
+	n := len(s.start) - 1
+	for first := 0; first < n; first += strip {
+		end := min(first+strip, n)
+		s.rows(next, current, previous, factor, first, end)
+		for i, c := range coefficient {
+			addScaled(acc[i][first*lanes:end*lanes], next[first*lanes:end*lanes], c)
+		}
+	}
+}
+
+// rowsPlain steps rows first to end of a panel. Products and sums are rounded
+// one by one in the order of the entries, as in the assembly, which agrees to
+// the bit.
+func (s *stepper[F]) rowsPlain(next, current, previous []F, factor F, first, end int) {
+	for u := first; u < end; u++ {
 		row := u * lanes
 		var sum [lanes]F
 		if s.diagonal != nil {
@@ -153,11 +171,11 @@ func (s *stepper[F]) stepPanel(next, current, previous []F, factor F, acc [][]F,
 			}
 		}
 		*(*[lanes]F)(next[row:]) = sum
-		for i, c := range coefficient {
-			to := (*[lanes]F)(acc[i][row:])
-			for l := range to {
-				to[l] += F(c * sum[l])
-			}
-		}
+	}
+}
+
+func addScaledPlain[F real](dst, x []F, c F) {
+	for i, y := range x {
+		dst[i] += F(c * y)
 	}
 }
