@@ -103,7 +103,8 @@ func (s *Solver) readFlow(r *Result) {
 	for v := range t.node {
 		x := &t.node[v]
 		f := below[v]
-		if x.parent < 0 || f == 0 {
+		// What the integers do not share the direction of is rounding of the sums.
+		if x.parent < 0 || f == 0 || (f > 0) != (x.flow > 0) {
 			continue
 		}
 		if !s.space.own(x.edge) {
