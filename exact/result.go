@@ -103,8 +103,7 @@ func (s *Solver) readFlow(r *Result) {
 	for v := range t.node {
 		x := &t.node[v]
 		f := below[v]
-		// What the integers do not share the direction of is rounding of the sums.
-		if x.parent < 0 || f == 0 || (f > 0) != (x.flow > 0) {
+		if x.parent < 0 || f == 0 {
 			continue
 		}
 		if !s.space.own(x.edge) {
@@ -123,12 +122,15 @@ func (s *Solver) readFlow(r *Result) {
 		if !along {
 			i = s.space.bwd[x.edge]
 		}
-		f = math.Abs(f)
-		if i == noEdge { // a one-way edge backwards, which blocked reports
-			i, f = max(s.space.fwd[x.edge], s.space.bwd[x.edge]), -f
-			r.Flow[i] = f
+		if i == noEdge { // a one-way edge backwards
+			// Where the integers move nothing that way, sums that should cancel
+			// were rounded; otherwise blocked reports it.
+			if whole := s.wholeFlow(x); whole != 0 && (whole > 0) == (f > 0) {
+				r.Flow[max(s.space.fwd[x.edge], s.space.bwd[x.edge])] = -math.Abs(f)
+			}
 			continue
 		}
+		f = math.Abs(f)
 		cost.addProduct(list[i].Length, f)
 		from := t.edge[x.edge].u
 		if !along {
@@ -142,16 +144,21 @@ func (s *Solver) readFlow(r *Result) {
 	r.Upper = cost.value()
 }
 
+// wholeFlow is the flow of a node's edge to its parent without the
+// perturbation, which sends a unit up from every node.
+func (s *Solver) wholeFlow(x *node) int64 {
+	return (x.flow - int64(x.size)) / int64(len(s.tree.node)+1)
+}
+
 // trueFlows is the flow of each node's edge to its parent in units of mass:
 // from the integers where those are exact, otherwise from the true supplies.
 func (s *Solver) trueFlows() []float64 {
 	t := &s.tree
 	flow := make([]float64, len(t.node))
 	if s.amount == nil {
-		per := int64(len(t.node) + 1)
-		for v, x := range t.node {
-			if x.parent >= 0 {
-				flow[v] = float64((x.flow-int64(x.size))/per) * s.unit
+		for v := range t.node {
+			if x := &t.node[v]; x.parent >= 0 {
+				flow[v] = float64(s.wholeFlow(x)) * s.unit
 			}
 		}
 		return flow

@@ -83,6 +83,16 @@ func NewSolver(net *graphio.Network, opt Options) (*Solver, error) {
 	return s, nil
 }
 
+// Reset forgets the pairs before: the next solve starts as on a new Solver, and
+// so ends in the same tree, without the price of preparing the network again.
+func (s *Solver) Reset() {
+	if s.warm {
+		s.tree.grow(s.space.startEdge, s.space.startOrder)
+		s.warm = false
+	}
+	s.price.cursor = 0
+}
+
 // Solve finds the transport cost from p to q. Both must lie on the solver's
 // network. Where ctx ends first it returns the certified interval reached so
 // far together with ctx.Err(). Errors: ErrTotals, ErrUnreachable,

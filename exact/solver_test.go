@@ -5,6 +5,7 @@ import (
 	"errors"
 	"math"
 	"math/rand/v2"
+	"slices"
 	"strings"
 	"testing"
 
@@ -269,5 +270,28 @@ func TestAllocations(t *testing.T) {
 	})
 	if pivots < 3000 || allocs > 40 {
 		t.Errorf("%v allocations in %d pivots", allocs, pivots/6)
+	}
+}
+
+// After Reset a solver does what a new one does, pivot by pivot.
+func TestReset(t *testing.T) {
+	net := graphiotest.Road(900, 6)
+	opt := exact.Options{Shares: true}
+	s, err := exact.NewSolver(net, opt)
+	if err != nil {
+		t.Fatal(err)
+	}
+	p, q := graphiotest.Smooth(net, 1), graphiotest.Smooth(net, 2)
+	if _, err := s.Solve(context.Background(), q, graphiotest.Smooth(net, 3)); err != nil {
+		t.Fatal(err)
+	}
+	s.Reset()
+	again, err := s.Solve(context.Background(), p, q)
+	if err != nil {
+		t.Fatal(err)
+	}
+	fresh := solve(t, net, p, q, opt)
+	if again.Pivots != fresh.Pivots || !slices.Equal(again.Flow, fresh.Flow) || !slices.Equal(again.Potential, fresh.Potential) {
+		t.Errorf("%d pivots after Reset, %d on a new solver, or another result", again.Pivots, fresh.Pivots)
 	}
 }
