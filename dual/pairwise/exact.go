@@ -1,0 +1,91 @@
+package pairwise
+
+import (
+	"context"
+	"fmt"
+
+	"example.org/barrow/exact"
+	"example.org/barrow/graphio"
+)
+
+// Exact solves every pair to proof; on one-way networks both orders. Each
+// result is verified, and Lower and Upper are its proved bounds.
+//
+// Errors: samples that cannot be moved onto each other, see graphio.Faults and
+// package exact; ErrCertificate of package exact; *MemoryError; the context's.
+// Cost: a solve a pair, of which most start from the tree of the pair before.
+func Exact(ctx context.Context, net *graphio.Network, samples *graphio.Samples, opt Options) (*Result, error) {
+	compared, err := transported(net, samples, opt)
+	if err != nil {
+		return nil, err
+	}
+	n := samples.Len()
+	if err := opt.afford(matrixPart(n, net.Directed(), true), solverPart(net, opt.threads())); err != nil {
+		return nil, err
+	}
+	m := newMatrix(samples.Names(), net.Directed(), true)
+	err = opt.Phases.Time("exact", func() error {
+		pairs := allPairs(n, m.Directed)
+		return solvePairs(ctx, net, compared, pairs, opt, "exact", func(k int, r *exact.Result) {
+			at := m.Index(pairs[k].i, pairs[k].j)
+			m.Value[at], m.Lower[at], m.Upper[at] = r.Distance(), r.Lower, r.Upper
+		})
+	})
+	if err != nil {
+		return nil, err
+	}
+	return &Result{Matrix: m}, nil
+}
+
+// allPairs lists pairs row by row: neighbours share a sample, which is what
+// makes a solver's last tree a good start.
+func allPairs(n int, directed bool) []pair {
+	var list []pair
+	for i := range n {
+		for j := range n {
+			if i < j || directed && i != j {
+				list = append(list, pair{i, j})
+			}
+		}
+	}
+	return list
+}
+
+// solvePairs solves pairs in runs, each by a solver that has forgotten its tree: the last
+// digit of a distance may depend on the tree a solve starts from, and runs do
+// not depend on the number of threads. take gets each result, from any
+// goroutine.
+func solvePairs(ctx context.Context, net *graphio.Network, compared *graphio.Samples, pairs []pair, opt Options, stage string, take func(k int, r *exact.Result)) error {
+	run := min(32, max(4, len(pairs)/64))
+	runs := (len(pairs) + run - 1) / run
+	report := opt.stage(stage)
+	return work(ctx, opt.threads(), runs, func(done, _ int) { report(min(done*run, len(pairs)), len(pairs)) }, func() func(int) error {
+		solver, err := exact.NewSolver(net, exact.Options{Unmatched: opt.Unmatched})
+		return func(task int) error {
+			if err != nil {
+				return err
+			}
+			solver.Reset()
+			for k := task * run; k < min(len(pairs), (task+1)*run); k++ {
+				r, err := solvePair(ctx, solver, compared, pairs[k])
+				if err != nil {
+					return err
+				}
+				take(k, r)
+			}
+			return nil
+		}
+	})
+}
+
+func solvePair(ctx context.Context, solver *exact.Solver, compared *graphio.Samples, at pair) (*exact.Result, error) {
+	p, q := compared.At(at.i), compared.At(at.j)
+	r, err := solver.Solve(ctx, p, q) // its errors name the samples
+	if err != nil {
+		return nil, err
+	}
+	if err := r.Verify(); err != nil {
+		return nil, fmt.Errorf("from %q to %q: %w", p.Name, q.Name, err)
+	}
+	return r, nil
+}
