@@ -15,13 +15,21 @@ type Sample struct {
 	Missing []int32 // nodes whose value was missing in the input, ascending
 }
 
-// Total is the sum of the sample's mass, added up in node order.
+// Total is the sum of the sample's mass, added up in node order and right to
+// the last place or so (compensated: Neumaier 1974): samples in proportion have
+// the same shares but for that.
 func (s Sample) Total() float64 {
-	sum := 0.0
+	sum, lost := 0.0, 0.0
 	for _, v := range s.Values {
-		sum += v
+		next := sum + v
+		if sum >= v {
+			lost += sum - next + v
+		} else {
+			lost += v - next + sum
+		}
+		sum = next
 	}
-	return sum
+	return sum + lost
 }
 
 // Counts reports whether every value is a whole number.
