@@ -193,3 +193,25 @@ func ExampleResult_Verify() {
 	// <nil> true
 	// true
 }
+
+// Samples in proportion are the same as shares, but for rounding: no error, and
+// a distance of no more than that.
+func TestProportion(t *testing.T) {
+	for _, c := range append(graphiotest.Cases(), graphiotest.Directed()...) {
+		around := 0.0
+		for _, e := range c.Net.EdgeList() {
+			around += e.Length
+		}
+		for seed := range uint64(50) {
+			p := anySample(rand.New(rand.NewPCG(seed, 5)), c.Net.Order())
+			q := p
+			q.Values = slices.Clone(p.Values)
+			for i, x := range q.Values {
+				q.Values[i] = x / 3 * 7
+			}
+			if d := shareDistance(t, c.Net, p, q); d > 1e-14*around {
+				t.Errorf("%s: distance %v", c.Name, d)
+			}
+		}
+	}
+}

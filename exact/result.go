@@ -40,6 +40,17 @@ type Result struct {
 // Distance is the transport cost: the upper bound, as what the flow costs.
 func (r *Result) Distance() float64 { return r.Upper }
 
+// closed reports whether the bounds are equal: to 1e-9, or to what rounding of
+// the masses is worth over the largest difference of potential, which is all
+// there is between samples that are alike.
+func (r *Result) closed() bool {
+	low, high := math.Inf(1), math.Inf(-1)
+	for _, pot := range r.Potential {
+		low, high = min(low, pot), max(high, pot)
+	}
+	return r.Upper-r.Lower <= 1e-9*r.Upper+strayMass(r.opt, r.p, r.q)*(high-low)
+}
+
 // Gap is (Upper − Lower) / Upper, 0 where both are 0.
 func (r *Result) Gap() float64 {
 	if r.Upper <= r.Lower {
@@ -68,7 +79,7 @@ func (s *Solver) result(p, q graphio.Sample, pivots int, optimal bool) *Result {
 	if s.opt.Unmatched > s.space.unmatched {
 		s.raiseUnmatched(r)
 	}
-	r.Lower = min(r.Lower, r.Upper) // equal but for rounding in the last place
+	r.Lower = max(0, min(r.Lower, r.Upper)) // equal but for rounding in the last place
 	return r
 }
 
@@ -99,6 +110,7 @@ func (s *Solver) raiseUnmatched(r *Result) {
 func (s *Solver) readFlow(r *Result) {
 	t, list := &s.tree, s.net.EdgeList()
 	below := s.trueFlows()
+	stray := strayMass(s.opt, r.p, r.q)
 	var cost doubled
 	for v := range t.node {
 		x := &t.node[v]
@@ -123,9 +135,8 @@ func (s *Solver) readFlow(r *Result) {
 			i = s.space.bwd[x.edge]
 		}
 		if i == noEdge { // a one-way edge backwards
-			// Where the integers move nothing that way, sums that should cancel
-			// were rounded; otherwise blocked reports it.
-			if whole := s.wholeFlow(x); whole != 0 && (whole > 0) == (f > 0) {
+			// Sums that should cancel are rounded; more, blocked reports.
+			if s.wholeFlow(x) != 0 && (s.amount == nil || math.Abs(f) > stray) {
 				r.Flow[max(s.space.fwd[x.edge], s.space.bwd[x.edge])] = -math.Abs(f)
 			}
 			continue

@@ -135,7 +135,7 @@ func (s *Solver) Solve(ctx context.Context, p, q graphio.Sample) (*Result, error
 		return nil, fmt.Errorf("from %q to %q: %w (edge %s → %s would be used backwards)",
 			p.Name, q.Name, ErrUnreachable, s.net.Name(int(edge.From)), s.net.Name(int(edge.To)))
 	}
-	if !(r.Upper-r.Lower <= 1e-9*r.Upper) {
+	if !r.closed() {
 		return nil, fmt.Errorf("from %q to %q: %w: lower %v, upper %v", p.Name, q.Name, ErrCertificate, r.Lower, r.Upper)
 	}
 	return r, nil

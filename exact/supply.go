@@ -114,6 +114,7 @@ func (s *Solver) roundedSupplies(p, q graphio.Sample, pTotal, qTotal float64) {
 // to the largest, and an extra node takes up all there is.
 func (s *Solver) balance(p, q graphio.Sample) error {
 	part, parts := s.parts()
+	stray := strayMass(s.opt, p, q)
 	sum, magnitude := make([]int64, parts), make([]int64, parts)
 	largest := make([]int32, parts)
 	true0 := make([]float64, parts)
@@ -144,14 +145,23 @@ func (s *Solver) balance(p, q graphio.Sample) error {
 			continue
 		}
 		// Rounding leaves half a unit a node at the most, and sums of shares
-		// some units in the last place.
-		if s.amount == nil || math.Abs(true0[c]) > 1e-9*float64(magnitude[c])*s.unit {
+		// some units in the last place, of all mass where p and q are alike.
+		if s.amount == nil || math.Abs(true0[c]) > max(1e-9*float64(magnitude[c])*s.unit, stray) {
 			return fmt.Errorf("%w within a component, the one of node %q: %q and %q have %v more and less there; join the components, or give a cost of unmatched mass",
 				ErrTotals, s.net.Name(int(s.space.label[largest[c]])), p.Name, q.Name, float64(left)*s.unit)
 		}
 		s.supply[largest[c]] -= left
 	}
 	return nil
+}
+
+// strayMass is what may be left where masses should cancel: a sum of shares, or
+// of amounts that are no whole numbers, is some units in the last place off.
+func strayMass(opt Options, p, q graphio.Sample) float64 {
+	if opt.Shares {
+		return 0x1p-48
+	}
+	return 0x1p-48 * max(p.Total(), q.Total())
 }
 
 // parts numbers the component of every solver node: all of one where an extra
