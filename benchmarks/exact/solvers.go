@@ -1,0 +1,101 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+	"os"
+	"os/exec"
+	"strconv"
+	"strings"
+	"time"
+
+	"example.org/barrow/benchmarks/internal/peak"
+	"example.org/barrow/exact"
+)
+
+// A run is what one solver did with one instance, in a process of its own.
+type run struct {
+	optimum string  // a whole number
+	seconds float64 // from a network in memory to the optimum
+	prepare float64 // the part of it before the samples matter
+	grown   int64   // bytes the process grew by meanwhile
+	pivots  int     // of barrow
+	late    bool    // it was stopped at the time limit
+}
+
+// solveFile is the process that solves an instance with barrow and prints the
+// run as lemon/lemon.cc does, with the number of pivots after it: Solve with
+// its certificate, NewSolver as what prepares. Verify is not counted.
+func solveFile(path string) error {
+	net, p, q, err := readInstance(path)
+	if err != nil {
+		return err
+	}
+	mark := peak.Start()
+	start := time.Now()
+	solver, err := exact.NewSolver(net, exact.Options{})
+	if err != nil {
+		return err
+	}
+	prepared := time.Now()
+	r, err := solver.Solve(context.Background(), p, q)
+	solved := time.Now()
+	_, grown := mark.Bytes()
+	if err != nil {
+		return err
+	}
+	if err := r.Verify(); err != nil {
+		return err
+	}
+	if r.Upper >= 1<<53 || r.Upper != math.Round(r.Upper) {
+		return fmt.Errorf("%s: optimum %v is not a whole number below 2^53", path, r.Upper)
+	}
+	fmt.Printf("%.0f %.6f %.6f %d %d\n", r.Upper, solved.Sub(prepared).Seconds(), prepared.Sub(start).Seconds(), grown>>10, r.Pivots)
+	return nil
+}
+
+// solveBy runs the command on an instance, for limit at most.
+func solveBy(limit time.Duration, command ...string) (run, error) {
+	ctx, cancel := context.WithTimeout(context.Background(), limit)
+	defer cancel()
+	cmd := exec.CommandContext(ctx, command[0], command[1:]...)
+	cmd.Stderr = os.Stderr
+	out, err := cmd.Output()
+	if errors.Is(ctx.Err(), context.DeadlineExceeded) {
+		return run{late: true, seconds: limit.Seconds()}, nil
+	}
+	if err != nil {
+		return run{}, fmt.Errorf("%s: %w", strings.Join(command, " "), err)
+	}
+	var r run
+	var kib int64
+	fields := strings.Fields(string(out))
+	if len(fields) < 4 {
+		return run{}, fmt.Errorf("%s: printed %q", strings.Join(command, " "), out)
+	}
+	if len(fields) > 4 {
+		r.pivots, err = strconv.Atoi(fields[4])
+	}
+	_, scan := fmt.Sscan(strings.Join(fields[:4], " "), &r.optimum, &r.seconds, &r.prepare, &kib)
+	r.seconds += r.prepare
+	r.grown = kib << 10
+	return r, errors.Join(err, scan)
+}
+
+// buildLemon compiles the driver into a folder. Without compiler or library
+// there is no LEMON, and the reason.
+func buildLemon(source, folder string) (path string, err error) {
+	path = folder + "/lemon"
+	out, err := exec.Command("g++", "-O3", "-march=native", "-w", "-o", path, source).CombinedOutput()
+	if err != nil {
+		return "", fmt.Errorf("LEMON is left out: %w\n%s", err, firstLines(string(out), 3))
+	}
+	return path, nil
+}
+
+func firstLines(s string, n int) string {
+	lines := strings.SplitAfterN(s, "\n", n+1)
+	return strings.Join(lines[:min(n, len(lines))], "")
+}
