@@ -25,8 +25,8 @@ func (t *tree) check() error {
 		for k, token := range t.tour.tokens(b) {
 			slot, v := b<<t.tour.shift+int32(k), token>>1
 			if token&1 == 0 {
-				if t.tour.place[v].enter != slot {
-					return fmt.Errorf("node %d entered in slot %d, not %d", v, slot, t.tour.place[v].enter)
+				if t.tour.place[v].slot[0] != slot {
+					return fmt.Errorf("node %d entered in slot %d, not %d", v, slot, t.tour.place[v].slot[0])
 				}
 				if len(open) == 0 && v != t.root || len(open) > 0 && open[len(open)-1] != t.node[v].parent {
 					return fmt.Errorf("node %d entered below %v", v, open)
@@ -44,7 +44,7 @@ func (t *tree) check() error {
 				seen++
 				continue
 			}
-			if t.tour.place[v].exit != slot || open[len(open)-1] != v {
+			if t.tour.place[v].slot[1] != slot || open[len(open)-1] != v {
 				return fmt.Errorf("node %d left in slot %d", v, slot)
 			}
 			open = open[:len(open)-1]

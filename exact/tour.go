@@ -30,8 +30,8 @@ type block struct {
 // place is where a node stands in the tour: the slots of its two tokens, and
 // its potential less the offset of the block it is entered in.
 type place struct {
-	pot         int64
-	enter, exit int32
+	pot  int64
+	slot [2]int32 // where it is entered, and where it is left
 }
 
 // newTour makes room for the tour of a tree of n nodes.
@@ -46,7 +46,7 @@ func newTour(n int) *tour {
 // potential is that of node v.
 func (t *tour) potential(v int32) int64 {
 	p := &t.place[v]
-	return t.off[p.enter>>t.shift] + p.pot
+	return t.off[p.slot[0]>>t.shift] + p.pot
 }
 
 // reset empties the tour, to be filled by push in tour order.
@@ -119,12 +119,14 @@ func (t *tour) putAfter(b, token int32) int32 {
 	return b
 }
 
-func (t *tour) setSlot(token, s int32) {
-	if token&1 == 0 {
-		t.place[token>>1].enter = s
-	} else {
-		t.place[token>>1].exit = s
-	}
+// setSlot notes where a token stands. Without a branch: tokens that enter and
+// that leave come in no order a processor could foresee.
+func (t *tour) setSlot(token, s int32) { t.place[token>>1].slot[token&1] = s }
+
+// addIfEnter adds d to the potential of the token's node, if the token is where
+// the node is entered; without a branch, again.
+func (t *tour) addIfEnter(token int32, d int64) {
+	t.place[token>>1].pot += d & (int64(token&1) - 1)
 }
 
 // splitAfter makes the token in slot s the last of its block and returns that
@@ -174,9 +176,7 @@ func (t *tour) absorb(b int32) {
 	d := t.off[next] - t.off[b]
 	for _, token := range t.slot[base : base+t.block[next].size] {
 		t.put(b, token)
-		if token&1 == 0 {
-			t.place[token>>1].pot += d
-		}
+		t.addIfEnter(token, d)
 	}
 	t.link(b, t.block[next].next)
 	t.block[next].size = -1
@@ -186,23 +186,21 @@ func (t *tour) absorb(b int32) {
 // raise adds d to the potential of every node in the subtree of v.
 func (t *tour) raise(v int32, d int64) {
 	p := t.place[v]
-	first, last := p.enter>>t.shift, p.exit>>t.shift
+	first, last := p.slot[0]>>t.shift, p.slot[1]>>t.shift
 	if first == last {
-		t.raiseSlots(p.enter, p.exit, d)
+		t.raiseSlots(p.slot[0], p.slot[1], d)
 		return
 	}
-	t.raiseSlots(p.enter, first<<t.shift+t.block[first].size, d)
+	t.raiseSlots(p.slot[0], first<<t.shift+t.block[first].size, d)
 	for b := t.block[first].next; b != last; b = t.block[b].next {
 		t.off[b] += d
 	}
-	t.raiseSlots(last<<t.shift, p.exit, d)
+	t.raiseSlots(last<<t.shift, p.slot[1], d)
 }
 
 func (t *tour) raiseSlots(from, to int32, d int64) {
 	for _, token := range t.slot[from:to] {
-		if token&1 == 0 {
-			t.place[token>>1].pot += d
-		}
+		t.addIfEnter(token, d)
 	}
 }
 
@@ -213,14 +211,14 @@ func (t *tour) move(stem []int32, under int32, d int64) {
 	c, w := stem[0], stem[len(stem)-1]
 	// Cut: x..y are the blocks of the subtree of w without its own two tokens,
 	// which are the last of block a before it and of block y.
-	a := t.splitAfter(t.place[w].enter)
-	t.splitAfter(t.place[w].exit)
+	a := t.splitAfter(t.place[w].slot[0])
+	t.splitAfter(t.place[w].slot[1])
 	mid := int32(-1)
 	if c != w {
-		mid = t.splitAfter(t.place[c].enter)
+		mid = t.splitAfter(t.place[c].slot[0])
 	}
 	potC, potW := t.potential(c), t.potential(w)
-	x, y := t.block[a].next, t.place[w].exit>>t.shift
+	x, y := t.block[a].next, t.place[w].slot[1]>>t.shift
 	z := t.block[y].next
 	t.block[a].size--
 	t.block[y].size--
@@ -238,7 +236,7 @@ func (t *tour) move(stem []int32, under int32, d int64) {
 	}
 	t.relabel(stem, potW+d)
 	// Link, right after the entry of the node above.
-	u := t.splitAfter(t.place[under].enter)
+	u := t.splitAfter(t.place[under].slot[0])
 	after := t.block[u].next
 	t.link(u, x)
 	t.link(y, after)
@@ -260,8 +258,8 @@ func (t *tour) relabel(stem []int32, potW int64) {
 		if i+2 < len(stem) {
 			pot = t.potential(child)
 		}
-		enter, exit := t.place[parent].exit, t.place[parent].enter
-		t.place[child] = place{pot: pot - t.off[enter>>t.shift], enter: enter, exit: exit}
+		enter, exit := t.place[parent].slot[1], t.place[parent].slot[0]
+		t.place[child] = place{pot: pot - t.off[enter>>t.shift], slot: [2]int32{enter, exit}}
 		t.slot[enter], t.slot[exit] = 2*child, 2*child+1
 	}
 }
