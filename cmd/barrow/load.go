@@ -1,0 +1,82 @@
+package main
+
+import (
+	"fmt"
+
+	"example.org/barrow/graphio"
+)
+
+// data is what the input files hold.
+type data struct {
+	net      *graphio.Network
+	samples  *graphio.Samples
+	inputs   []graphio.InputFile
+	warnings []string
+}
+
+// load reads the network and, where given, the samples.
+func (s *session) load(set *settings) (*data, error) {
+	d := &data{}
+	err := s.phases.Time("load", func() error {
+		net, source, err := graphio.ReadNetwork(set.edges, set.nodes, set.network())
+		if err != nil {
+			return err
+		}
+		d.net = net
+		d.add(source)
+		if set.samples == "" || s.ctx.Err() != nil {
+			return s.ctx.Err()
+		}
+		if d.samples, source, err = graphio.ReadSamples(set.samples, net, set.sampling()); err != nil {
+			return err
+		}
+		d.add(source)
+		return s.ctx.Err()
+	})
+	if err != nil {
+		return nil, err
+	}
+	for _, w := range d.warnings {
+		s.note(w)
+	}
+	return d, nil
+}
+
+func (d *data) add(source *graphio.Source) {
+	d.inputs = append(d.inputs, source.Files...)
+	d.warnings = append(d.warnings, source.Warnings...)
+}
+
+// networkLine is the network in one line.
+func networkLine(net *graphio.Network) string {
+	_, parts := net.Components()
+	joined := "in one part"
+	if parts > 1 {
+		joined = fmt.Sprintf("in %s parts", count(parts))
+	}
+	ways := ""
+	if net.Directed() {
+		ways = ", one-way edges honoured"
+	}
+	return fmt.Sprintf("%s, %s, %s%s", several(net.Order(), "node"), several(net.Size(), "edge"), joined, ways)
+}
+
+// samplesLine is the samples in one line.
+func samplesLine(samples *graphio.Samples) string {
+	entries, counts := 0, 0
+	for i := range samples.Len() {
+		s := samples.At(i)
+		entries += len(s.Values)
+		if s.Counts() {
+			counts++
+		}
+	}
+	kind := ""
+	switch {
+	case counts == samples.Len():
+		kind = ", all of them counts"
+	case counts > 0:
+		kind = fmt.Sprintf(", %s of counts", several(counts, "sample"))
+	}
+	return fmt.Sprintf("%s, %s above 0%s", several(samples.Len(), "sample"), several(entries, "value"), kind)
+}

@@ -1,0 +1,214 @@
+package main
+
+import (
+	"bytes"
+	"encoding/json"
+	"errors"
+	"os"
+	"os/exec"
+	"path/filepath"
+	"regexp"
+	"slices"
+	"strconv"
+	"strings"
+	"testing"
+	"time"
+
+	"github.com/rogpeppe/go-internal/testscript"
+)
+
+func TestMain(m *testing.M) {
+	testscript.Main(m, map[string]func(){"barrow": main})
+}
+
+// TestScripts runs the scripts under testdata, each a small story of one use.
+// Beside the commands of testscript they know
+//
+//	code N CMD…        run a command that must end with exit code N
+//	nothing-left DIR   the folder holds no hidden file or folder
+//	edit FILE RE NEW   replace what matches a regular expression, which must be there
+//	grid               write a large network and samples: edges.csv and samples.csv
+//	interrupt CMD…     run a command, send it Ctrl-C as it works: it must end with 130
+func TestScripts(t *testing.T) {
+	scripts, err := filepath.Glob("testdata/*.txtar")
+	if err != nil || len(scripts) == 0 {
+		t.Fatal("no scripts found")
+	}
+	testscript.Run(t, testscript.Params{
+		Dir: "testdata",
+		Cmds: map[string]func(*testscript.TestScript, bool, []string){
+			"code": wantCode, "nothing-left": nothingLeft, "interrupt": interrupt, "grid": writeGrid, "edit": edit,
+		},
+	})
+}
+
+func wantCode(ts *testscript.TestScript, neg bool, args []string) {
+	want, err := strconv.Atoi(args[0])
+	if err != nil || neg || len(args) < 2 {
+		ts.Fatalf("usage: code N CMD…")
+	}
+	got := 0
+	var exit *exec.ExitError
+	if err := ts.Exec(args[1], args[2:]...); errors.As(err, &exit) {
+		got = exit.ExitCode()
+	} else if err != nil {
+		ts.Fatalf("%v", err)
+	}
+	if got != want {
+		ts.Fatalf("exit code %d, want %d", got, want)
+	}
+}
+
+func nothingLeft(ts *testscript.TestScript, neg bool, args []string) {
+	if left := hiddenIn(ts.MkAbs(args[0])); len(left) > 0 {
+		ts.Fatalf("left behind: %v", left)
+	}
+}
+
+func hiddenIn(dir string) []string {
+	entries, err := os.ReadDir(dir)
+	if err != nil {
+		return []string{err.Error()}
+	}
+	var list []string
+	for _, e := range entries {
+		if strings.HasPrefix(e.Name(), ".") && e.Name() != ".tmp" { // testscript's own
+			list = append(list, e.Name())
+		}
+	}
+	return list
+}
+
+// interrupt waits until the command has begun to work, which its hidden folder
+// shows.
+func interrupt(ts *testscript.TestScript, neg bool, args []string) {
+	path, err := exec.LookPath(args[0])
+	ts.Check(err)
+	cmd := exec.Command(path, args[1:]...)
+	cmd.Dir = ts.MkAbs(".")
+	var stderr bytes.Buffer
+	cmd.Stderr = &stderr
+	ts.Check(cmd.Start())
+	for begin := time.Now(); len(hiddenIn(cmd.Dir)) == 0; time.Sleep(5 * time.Millisecond) {
+		if time.Since(begin) > time.Minute {
+			cmd.Process.Kill()
+			ts.Fatalf("no sign of work after a minute; stderr: %s", &stderr)
+		}
+	}
+	time.Sleep(50 * time.Millisecond)
+	ts.Check(cmd.Process.Signal(os.Interrupt))
+	var exit *exec.ExitError
+	if err := cmd.Wait(); !errors.As(err, &exit) || exit.ExitCode() != interrupted {
+		ts.Fatalf("ended with %v, want exit code %d; stderr: %s", err, interrupted, &stderr)
+	}
+	if !strings.Contains(stderr.String(), "interrupted") {
+		ts.Fatalf("stderr: %s", &stderr)
+	}
+}
+
+func edit(ts *testscript.TestScript, neg bool, args []string) {
+	path := ts.MkAbs(args[0])
+	text, err := os.ReadFile(path)
+	ts.Check(err)
+	changed := regexp.MustCompile(args[1]).ReplaceAll(text, []byte(args[2]))
+	if bytes.Equal(changed, text) {
+		ts.Fatalf("nothing in %s matches %s", args[0], args[1])
+	}
+	ts.Check(os.WriteFile(path, changed, 0o644))
+}
+
+// writeGrid writes a network and samples that keep the solver busy for long.
+func writeGrid(ts *testscript.TestScript, neg bool, args []string) {
+	const side, samples = 150, 40
+	var edges, values strings.Builder
+	edges.WriteString("from,to,length\n")
+	values.WriteString("sample,node,value\n")
+	s := uint32(1)
+	next := func(n uint32) string {
+		s = s*1664525 + 1013904223 // Numerical Recipes' generator: any will do
+		return strconv.Itoa(int(1 + s>>8%n))
+	}
+	name := func(i, j int) string { return strconv.Itoa(i) + "-" + strconv.Itoa(j) }
+	for i := range side {
+		for j := range side {
+			if i+1 < side {
+				edges.WriteString(name(i, j) + "," + name(i+1, j) + "," + next(100) + "\n")
+			}
+			if j+1 < side {
+				edges.WriteString(name(i, j) + "," + name(i, j+1) + "," + next(100) + "\n")
+			}
+			for k := range samples {
+				values.WriteString("s" + strconv.Itoa(k) + "," + name(i, j) + "," + next(1000) + "\n")
+			}
+		}
+	}
+	ts.Check(os.WriteFile(ts.MkAbs("edges.csv"), []byte(edges.String()), 0o644))
+	ts.Check(os.WriteFile(ts.MkAbs("samples.csv"), []byte(values.String()), 0o644))
+}
+
+// The help texts say what is so: their examples run, each flag they list is
+// taken, and each flag taken is listed.
+func TestHelpIsTrue(t *testing.T) {
+	t.Chdir(t.TempDir())
+	call := func(args ...string) (string, string, int) {
+		var stdout, stderr bytes.Buffer
+		code := run(args, strings.NewReader(""), &stdout, &stderr)
+		return stdout.String(), stderr.String(), code
+	}
+	if _, stderr, code := call("demo", "harbour"); code != 0 {
+		t.Fatalf("demo ended with %d: %s", code, stderr)
+	}
+	examples := 0
+	for _, c := range commands {
+		for line := range strings.Lines(c.help) {
+			if example, found := strings.CutPrefix(strings.TrimSpace(line), "barrow "); found && strings.HasPrefix(line, "  barrow ") {
+				examples++
+				if _, stderr, code := call(strings.Fields(example)...); code != 0 {
+					t.Errorf("barrow %s ended with %d: %s", example, code, stderr)
+				}
+			}
+		}
+		for line := range strings.Lines(c.help) {
+			if len(line) > 89 && !strings.HasPrefix(line, "  barrow ") {
+				t.Errorf("%s --help has a line of %d letters: %s", c.name, len(line), line)
+			}
+			if words := strings.Fields(line); len(words) > 1 && strings.HasPrefix(line, "  --") {
+				_, stderr, _ := call(c.name, words[0]+"=\x00")
+				if strings.Contains(stderr, "unknown flag") {
+					t.Errorf("%s --help lists %s, which it does not take", c.name, words[0])
+				}
+			}
+		}
+	}
+	if examples < len(commands) {
+		t.Errorf("%d examples for %d commands", examples, len(commands))
+	}
+	for command, flags := range map[string][]string{"matrix": recordedFlags(t, "town"), "pair": recordedFlags(t, "bridge")} {
+		help, _, _ := call("help", command)
+		for _, f := range append(flags, "out", "replace", "replay") {
+			if !strings.Contains(help, "--"+f) {
+				t.Errorf("%s --help does not mention --%s", command, f)
+			}
+		}
+	}
+}
+
+func recordedFlags(t *testing.T, dir string) []string {
+	text, err := os.ReadFile(filepath.Join(dir, recordFile))
+	if err != nil {
+		t.Fatal(err)
+	}
+	var r record
+	if err := json.Unmarshal(text, &r); err != nil {
+		t.Fatal(err)
+	}
+	var names []string
+	for name := range r.Parameters {
+		names = append(names, name)
+	}
+	if len(names) < 10 {
+		t.Fatalf("only %v recorded in %s", names, dir)
+	}
+	slices.Sort(names)
+	return names
+}

@@ -1,0 +1,257 @@
+package main
+
+import (
+	"bufio"
+	"context"
+	"fmt"
+	"io"
+	"math"
+	"runtime/debug"
+	"slices"
+
+	"example.org/barrow/dual/pairwise"
+	"example.org/barrow/graphio"
+)
+
+// matrix compares all samples with each other.
+func (s *session) matrix(args []string) error {
+	_, _, err := s.makeMatrix(args)
+	return err
+}
+
+// makeMatrix is matrix, with its result for a caller that goes on.
+func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
+	set := newSettings(s.command)
+	set.input()
+	set.comparison("multiscale")
+	set.flags.StringVar(&set.calibrate, "calibrate", "auto", "")
+	set.flags.Uint64Var(&set.seed, "seed", 1, "")
+	set.running()
+	set.results("results")
+	rest, err := set.parse(args)
+	if err != nil {
+		return nil, nil, err
+	}
+	recorded, rest, err := s.settle(set, rest)
+	if err != nil {
+		return nil, nil, err
+	}
+	if len(rest) > 0 {
+		return nil, nil, usageError{fmt.Sprintf("%q, where only flags are taken; barrow pair A B compares two samples", rest[0])}
+	}
+	s.progress.progressTo(s.stderr)
+	d, err := s.load(set)
+	if err != nil {
+		return nil, nil, err
+	}
+	if d.samples.Len() < 2 {
+		return nil, nil, oneFault(set.samples, several(d.samples.Len(), "sample"), "two samples or more to compare")
+	}
+	r, err := s.measure(set, d, recorded)
+	return d, r, err
+}
+
+// settle fills in a recorded run where one is repeated, and checks all values.
+func (s *session) settle(set *settings, rest []string) (*record, []string, error) {
+	var recorded *record
+	if set.replay != "" {
+		var err error
+		if recorded, err = s.replay(set, rest); err != nil {
+			return nil, nil, err
+		}
+		rest = recorded.Arguments
+		if !set.flags.Changed("out") {
+			set.out = "" // repeat, compare, keep nothing
+		}
+	}
+	return recorded, rest, set.check()
+}
+
+// measure makes the matrix of loaded samples and writes it; nil where the
+// folder holds it already.
+func (s *session) measure(set *settings, d *data, recorded *record) (*pairwise.Result, error) {
+	if recorded != nil {
+		if err := recorded.sameFiles(d.inputs); err != nil {
+			return nil, err
+		}
+	}
+	rec := s.newRecord(set, nil, d)
+	f, same, err := openFolder(set.out, set.replace, rec)
+	defer f.discard()
+	if same || err != nil {
+		return nil, s.already(set, err)
+	}
+	opt, err := s.options(set)
+	if err != nil {
+		return nil, err
+	}
+	if opt.Memory > 0 {
+		debug.SetMemoryLimit(int64(opt.Memory)) // collect garbage harder as it comes near
+	}
+	r, err := methods[set.method](s.ctx, d.net, d.samples, opt)
+	if err != nil {
+		return nil, err
+	}
+	s.progress.end()
+	rec.Counts["pairs"] = pairCount(d)
+	rec.Choices = choices{r.Diffusion, recordCalibration(r.Calibration)}
+	s.cautions(rec, d, set, r)
+	err = s.phases.Time("write", func() error { return f.writeMatrices(d, set.method, r) })
+	if err != nil {
+		return nil, err
+	}
+	if err := s.close(f, rec, recorded, func(w io.Writer) { summary(w, set, d, r) }); err != nil {
+		return nil, err
+	}
+	return r, nil
+}
+
+var methods = map[string]func(context.Context, *graphio.Network, *graphio.Samples, pairwise.Options) (*pairwise.Result, error){
+	"multiscale": pairwise.Multiscale, "exact": pairwise.Exact, "kernel": pairwise.Kernel, "variation": pairwise.Variation,
+}
+
+func pairCount(d *data) int {
+	n := d.samples.Len()
+	if d.net.Directed() {
+		return n * (n - 1)
+	}
+	return n * (n - 1) / 2
+}
+
+// cautions notes what a reader of the numbers should know and may not expect.
+func (s *session) cautions(rec *record, d *data, set *settings, r *pairwise.Result) {
+	say := func(text string) {
+		s.note(text)
+		rec.Warnings = append(rec.Warnings, text)
+	}
+	if d.net.Directed() && set.method != "exact" {
+		say("the network is one-way, which " + set.method + " leaves aside: distances are the same in both directions; --method exact honours it")
+	}
+	if c := r.Calibration; c != nil && c.HeldOut < 20 {
+		say(fmt.Sprintf("only %s held out to measure the error on: take it as a rough guess", several(c.HeldOut, "pair")))
+	}
+}
+
+func (f *folder) writeMatrices(d *data, method string, r *pairwise.Result) error {
+	err := f.write("matrix.csv", func(w *bufio.Writer) error { return writeMatrix(w, r.Matrix) })
+	if err == nil {
+		err = f.write("pairs.csv", func(w *bufio.Writer) error {
+			return writePairs(w, r.Matrix, method, d.net.Directed())
+		})
+	}
+	if err == nil && r.Calibration != nil {
+		err = f.write("calibration.csv", func(w *bufio.Writer) error {
+			return writeCalibration(w, r.Matrix.Names, r.Calibration)
+		})
+	}
+	return err
+}
+
+// already reports a folder that cannot be, or need not be, written.
+func (s *session) already(set *settings, err error) error {
+	if err == nil {
+		_, err = fmt.Fprintf(s.stdout, "%s holds the results of this run already, whole and unchanged: nothing to do (--replace makes them anew)\n", set.out)
+	}
+	return err
+}
+
+// close finishes the results, and prints the summary and what became of them.
+func (s *session) close(f *folder, rec, recorded *record, summary func(w io.Writer)) error {
+	if err := s.ctx.Err(); err != nil {
+		return err
+	}
+	rec.Phases = s.phases
+	if err := f.commit(rec); err != nil {
+		return err
+	}
+	summary(s.stdout)
+	if recorded != nil {
+		if !slices.Equal(rec.Outputs, recorded.Outputs) {
+			return fmt.Errorf("the repeated run gave other bytes than recorded; same version and processor?")
+		}
+		fmt.Fprintln(s.stdout, "replayed  the same bytes as recorded")
+	}
+	if f.out != "" {
+		fmt.Fprintf(s.stdout, "written   %s: %s\n", f.typed, f.names())
+	}
+	return nil
+}
+
+// summary is the matrix in a few lines.
+func summary(w io.Writer, set *settings, d *data, r *pairwise.Result) {
+	compared := "compared as shares"
+	if set.mass == "amount" {
+		compared = "compared as amounts"
+		if set.unmatched > 0 {
+			compared += fmt.Sprintf(", a unit of mass created or removed costing %v", set.unmatched)
+		}
+	}
+	fmt.Fprintf(w, "network   %s\n", networkLine(d.net))
+	fmt.Fprintf(w, "samples   %s; %s\n", samplesLine(d.samples), compared)
+	fmt.Fprintf(w, "method    %s\n", methodLine(set.method, r))
+	near, far, middle := extremes(r.Matrix)
+	for _, e := range []struct {
+		word string
+		p    [2]int
+	}{{"nearest ", near}, {"farthest", far}} {
+		fmt.Fprintf(w, "%s  %s  %s and %s\n", e.word, human(r.Matrix.At(e.p[0], e.p[1])), r.Matrix.Names[e.p[0]], r.Matrix.Names[e.p[1]])
+	}
+	fmt.Fprintf(w, "median    %s over %s\n", human(middle), several(pairCount(d), "pair"))
+	fmt.Fprintf(w, "unit      %s\n", unitLine(set, r))
+}
+
+func methodLine(method string, r *pairwise.Result) string {
+	switch method {
+	case "exact":
+		return "exact: every pair solved and its proof checked"
+	case "kernel":
+		return "kernel: maximum mean discrepancy under heat kernels"
+	case "variation":
+		return "variation: half the sum of node-by-node differences, blind to where nodes lie"
+	}
+	c := r.Calibration
+	if c == nil {
+		return "multiscale without calibration: the numbers are unscaled, they rank pairs but are no lengths"
+	}
+	return fmt.Sprintf("multiscale, calibrated on %s solved exactly\n          on %d of them held out: median error %s, 95 %% within %s, rank correlation (Spearman) %s",
+		several(len(c.Pairs), "pair"), c.HeldOut, percent(c.MedianError), percent(c.P95), human(c.Spearman))
+}
+
+func unitLine(set *settings, r *pairwise.Result) string {
+	switch {
+	case set.method == "kernel":
+		return "none; 0 for equal shares"
+	case set.method == "variation" && set.mass == "share":
+		return "share of the mass that differs, 0 to 1"
+	case set.method == "variation":
+		return "that of your masses"
+	case set.method == "multiscale" && r.Calibration == nil:
+		return "none (--calibrate N gives the unit of your edge lengths)"
+	case set.mass == "amount":
+		return "mass times edge length, in the units of your files"
+	}
+	return "that of your edge lengths: how far a unit of mass moves on average"
+}
+
+// extremes are the nearest and farthest pair and the median distance.
+func extremes(m *pairwise.Matrix) (near, far [2]int, middle float64) {
+	least, most := math.Inf(1), math.Inf(-1)
+	var all []float64
+	for i := range m.Names {
+		for j := range m.Names {
+			if i == j || j < i && !m.Directed {
+				continue
+			}
+			x := m.At(i, j)
+			all = append(all, x)
+			if x < least {
+				least, near = x, [2]int{i, j}
+			}
+			if x > most {
+				most, far = x, [2]int{i, j}
+			}
+		}
+	}
+	slices.Sort(all)
+	return near, far, median(all)
+}

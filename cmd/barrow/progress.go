@@ -1,0 +1,69 @@
+package main
+
+import (
+	"io"
+	"os"
+	"sync"
+	"time"
+
+	"github.com/schollz/progressbar/v3"
+	"golang.org/x/term"
+)
+
+// stageText says what a stage does while its bar is shown.
+var stageText = map[string]string{
+	"embed":     "vectors of the samples",
+	"calibrate": "pairs solved exactly to calibrate",
+	"estimate":  "pairs estimated",
+	"exact":     "pairs solved exactly",
+}
+
+// progress shows one bar a stage, on a terminal only.
+type progress struct {
+	lock  sync.Mutex
+	to    io.Writer // nil: show nothing
+	stage string
+	bar   *progressbar.ProgressBar
+}
+
+// progressTo shows progress on w if it is a terminal.
+func (p *progress) progressTo(w io.Writer) {
+	if f, ok := w.(*os.File); ok && term.IsTerminal(int(f.Fd())) {
+		p.to = w
+	}
+}
+
+func (p *progress) report(stage string, done, total int) {
+	p.lock.Lock()
+	defer p.lock.Unlock()
+	if p.to == nil {
+		return
+	}
+	if p.stage != stage {
+		p.finish()
+		p.stage = stage
+		p.bar = progressbar.NewOptions(total,
+			progressbar.OptionSetWriter(p.to),
+			progressbar.OptionSetDescription(stageText[stage]),
+			progressbar.OptionSetPredictTime(true),
+			progressbar.OptionShowCount(),
+			progressbar.OptionSetWidth(24),
+			progressbar.OptionThrottle(100*time.Millisecond),
+			progressbar.OptionClearOnFinish())
+	}
+	p.bar.Set(done)
+}
+
+// end takes the bar away.
+func (p *progress) end() {
+	p.lock.Lock()
+	defer p.lock.Unlock()
+	p.finish()
+}
+
+func (p *progress) finish() {
+	if p.bar != nil {
+		p.bar.Finish()
+	}
+	p.bar, p.stage = nil, ""
+}
