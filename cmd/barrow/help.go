@@ -49,7 +49,9 @@ degrees, masses, and every problem found. It writes no file.
 
 Example
   barrow inspect --edges harbour/edges.csv --nodes harbour/nodes.csv --samples harbour/samples.csv --groups harbour/groups.csv
-` + inputHelp + `  --groups FILE         sample,<any columns>: labels of samples
+` + inputHelp + `
+Labels
+  --groups FILE         sample,<any columns>: labels of samples
 
 Exit codes
   0 no problem found, 2 problems (listed on stdout) or bad usage
@@ -129,9 +131,10 @@ Results
                           pairs.csv        a,b,distance,lower,upper,method
                           flows.csv        from,to,flow,cost: mass on each edge
                                            used, below 0 from to to from
-                          potentials.csv   node,potential: differs by no more than
-                                           the length along any edge; its sum over
-                                           A less that over B is the lower bound
+                          potentials.csv   node,potential: the proof. It falls by no
+                                           more than the length along any edge, and
+                                           the sum of potential times (A - B) is the
+                                           lower bound
                           unmatched.csv    node,removed (--unmatched; created
                                            where below 0)
                           run.json         what was run, on what, and what it took
@@ -140,7 +143,7 @@ Results
 
 const demoHelp = `barrow demo invents a harbour town, counts its traffic for two weeks with a bridge
 closed in the second, writes that as input files, and runs matrix and pair on it.
-It takes less than a minute and some 30 MB of disk.
+It takes a few seconds and some 15 MB of disk.
 
 Example
   barrow demo harbour

@@ -2,7 +2,9 @@ package main
 
 import (
 	"fmt"
+	"os"
 
+	"example.org/barrow/dual/pairwise"
 	"example.org/barrow/graphio"
 )
 
@@ -16,6 +18,9 @@ type data struct {
 
 // load reads the network and, where given, the samples.
 func (s *session) load(set *settings) (*data, error) {
+	if err := affordable(set); err != nil {
+		return nil, err
+	}
 	d := &data{}
 	err := s.phases.Time("load", func() error {
 		net, source, err := graphio.ReadNetwork(set.edges, set.nodes, set.network())
@@ -40,6 +45,26 @@ func (s *session) load(set *settings) (*data, error) {
 		s.note(w)
 	}
 	return d, nil
+}
+
+// affordable refuses files that are too large to hold before they are read.
+// What is read takes two to four times the bytes of a table; compressed files
+// show their size only as they are read.
+func affordable(set *settings) error {
+	limit, err := set.memoryBytes()
+	if err != nil || limit == 0 {
+		return err
+	}
+	total := uint64(0)
+	for _, path := range []string{set.edges, set.nodes, set.samples} {
+		if info, err := os.Stat(path); err == nil && info.Mode().IsRegular() {
+			total += uint64(info.Size())
+		}
+	}
+	if 2*total > limit {
+		return &pairwise.MemoryError{Limit: limit, Parts: []pairwise.MemoryPart{{Name: "what is in the files", Bytes: 2 * total}}}
+	}
+	return nil
 }
 
 func (d *data) add(source *graphio.Source) {

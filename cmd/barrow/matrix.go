@@ -127,7 +127,11 @@ func (s *session) cautions(rec *record, d *data, set *settings, r *pairwise.Resu
 	if d.net.Directed() && set.method != "exact" {
 		say("the network is one-way, which " + set.method + " leaves aside: distances are the same in both directions; --method exact honours it")
 	}
-	if c := r.Calibration; c != nil && c.HeldOut < 20 {
+	switch c := r.Calibration; {
+	case c == nil:
+	case len(c.Pairs) == pairCount(d):
+		say("with so few samples every pair was solved to calibrate: --method exact takes no longer and has no error")
+	case c.HeldOut < 20:
 		say(fmt.Sprintf("only %s held out to measure the error on: take it as a rough guess", several(c.HeldOut, "pair")))
 	}
 }

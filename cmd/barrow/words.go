@@ -13,7 +13,7 @@ func human(x float64) string {
 	switch size := math.Abs(x); {
 	case math.IsNaN(x):
 		return "unknown"
-	case size >= 1e9 || size != 0 && size < 1e-3:
+	case size >= 1e9 || size < 1:
 		return strconv.FormatFloat(x, 'g', 4, 64)
 	case size >= 1000:
 		return commas(strconv.FormatFloat(x, 'f', 0, 64))
@@ -21,10 +21,8 @@ func human(x float64) string {
 		return strconv.FormatFloat(x, 'f', 1, 64)
 	case size >= 10:
 		return strconv.FormatFloat(x, 'f', 2, 64)
-	case size >= 1:
-		return strconv.FormatFloat(x, 'f', 3, 64)
 	}
-	return strconv.FormatFloat(x, 'f', 4, 64)
+	return strconv.FormatFloat(x, 'f', 3, 64)
 }
 
 // count is a whole number with commas between thousands.

@@ -60,8 +60,9 @@ func (opt Options) afford(parts ...MemoryPart) error {
 	return nil
 }
 
-// inUse is the memory of what is alive, near enough.
+// inUse is the memory of what is alive.
 func inUse() uint64 {
+	runtime.GC()
 	var m runtime.MemStats
 	runtime.ReadMemStats(&m)
 	return m.HeapAlloc
@@ -77,7 +78,7 @@ func matrixPart(samples int, directed, bounds bool) MemoryPart {
 	if bounds {
 		arrays = 3
 	}
-	return MemoryPart{"distances", 8 * arrays * pairs}
+	return MemoryPart{"distances", 8 * (arrays + 1) * pairs} // one more to sort them
 }
 
 // solverPart is what the exact solvers of all threads take: see package exact.
