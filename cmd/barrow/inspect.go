@@ -7,6 +7,8 @@ import (
 	"slices"
 	"strings"
 
+	"gonum.org/v1/gonum/graph/topo"
+
 	"example.org/barrow/graphio"
 )
 
@@ -36,10 +38,12 @@ func (s *session) inspect(args []string) error {
 // depends on it is left out.
 func (s *session) look(set *settings) error {
 	var problems, notes []string
+	found := 0
 	keep := func(err error) error {
 		var faults *graphio.Faults
 		if errors.As(err, &faults) {
 			problems = append(problems, strings.Split(faults.Error(), "\n")...)
+			found += faults.Total
 			return nil
 		}
 		return err
@@ -91,7 +95,7 @@ func (s *session) look(set *settings) error {
 		fmt.Fprintln(s.stdout, "problems  none found")
 		return nil
 	}
-	fmt.Fprintf(s.stdout, "problems  %d\n  %s\n", len(problems), strings.Join(problems, "\n  "))
+	fmt.Fprintf(s.stdout, "problems  %s\n  %s\n", count(found), strings.Join(problems, "\n  "))
 	return errReported
 }
 
@@ -116,7 +120,11 @@ func (s *session) lookNetwork(net *graphio.Network) {
 	}
 	fmt.Fprintf(s.stdout, "lengths   %s, all together %s (your unit)\n", spread(lengths), amount(total))
 	if oneWay > 0 {
-		fmt.Fprintf(s.stdout, "one-way   %s of %s\n", several(oneWay, "edge"), count(net.Size()))
+		reach := "every node can reach every other"
+		if parts := len(topo.TarjanSCC(net.AsDirected())); parts > 1 {
+			reach = fmt.Sprintf("in %s parts that cannot all reach each other both ways, so that some mass may have no way", count(parts))
+		}
+		fmt.Fprintf(s.stdout, "one-way   %s of %s; %s\n", count(oneWay), several(net.Size(), "edge"), reach)
 	}
 	degrees := make([]float64, net.Order())
 	for v := range degrees {

@@ -154,7 +154,11 @@ func (s *session) fail(err error) int {
 	case errors.Is(err, errReported):
 		return badInput
 	case errors.Is(err, context.Canceled):
-		fmt.Fprintf(s.stderr, "%s: interrupted; nothing was written\n", name)
+		left := "no results were written"
+		if s.command == "demo" {
+			left = "the files that are there are whole"
+		}
+		fmt.Fprintf(s.stderr, "%s: interrupted; %s\n", name, left)
 		return interrupted
 	case errors.As(err, &usage):
 		fmt.Fprintf(s.stderr, "%s: %v\n(%s --help says what it takes)\n", name, err, name)
