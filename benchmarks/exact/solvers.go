@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"math/big"
 	"os"
 	"os/exec"
 	"strconv"
@@ -13,6 +14,7 @@ import (
 
 	"example.org/barrow/benchmarks/internal/peak"
 	"example.org/barrow/exact"
+	"example.org/barrow/graphio"
 )
 
 // A run is what one solver did with one instance, in a process of its own.
@@ -49,11 +51,19 @@ func solveFile(path string) error {
 	if err := r.Verify(); err != nil {
 		return err
 	}
-	if r.Upper >= 1<<53 || r.Upper != math.Round(r.Upper) {
-		return fmt.Errorf("%s: optimum %v is not a whole number below 2^53", path, r.Upper)
-	}
-	fmt.Printf("%.0f %.6f %.6f %d %d\n", r.Upper, solved.Sub(prepared).Seconds(), prepared.Sub(start).Seconds(), grown>>10, r.Pivots)
+	fmt.Printf("%v %.6f %.6f %d %d\n", cost(net, r.Flow), solved.Sub(prepared).Seconds(), prepared.Sub(start).Seconds(), grown>>10, r.Pivots)
 	return nil
+}
+
+// cost adds a flow up exactly: lengths and flows are whole numbers below 2^53,
+// their products need not be.
+func cost(net *graphio.Network, flow []float64) *big.Int {
+	sum, product := new(big.Int), new(big.Int)
+	for i, e := range net.EdgeList() {
+		f := big.NewInt(int64(math.Abs(flow[i])))
+		sum.Add(sum, product.Mul(f, big.NewInt(int64(e.Length))))
+	}
+	return sum
 }
 
 // solveBy runs the command on an instance, for limit at most.
