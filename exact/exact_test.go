@@ -175,7 +175,7 @@ func TestSolveAgainstLinearProgram(t *testing.T) {
 			if err := s.setSupplies(p, q); err != nil {
 				t.Fatalf("seed %d: %v", seed, err)
 			}
-			s.tree.load(s.supply)
+			s.load()
 			for {
 				if err := s.tree.check(); err != nil {
 					t.Fatalf("seed %d pair %d: %v", seed, pair, err)
@@ -216,7 +216,7 @@ func TestInvariantsOnLargerNetwork(t *testing.T) {
 		if err := s.setSupplies(p, q); err != nil {
 			t.Fatal(err)
 		}
-		s.tree.load(s.supply)
+		s.load()
 		for k := 0; ; k++ {
 			i, forward, excess := s.price.next(&s.tree)
 			if excess == 0 {

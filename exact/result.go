@@ -158,7 +158,7 @@ func (s *Solver) readFlow(r *Result) {
 // wholeFlow is the flow of a node's edge to its parent without the
 // perturbation, which sends a unit up from every node.
 func (s *Solver) wholeFlow(x *node) int64 {
-	return (x.flow - int64(x.size)) / int64(len(s.tree.node)+1)
+	return (x.flow - s.sign*int64(x.size)) / int64(len(s.tree.node)+1)
 }
 
 // trueFlows is the flow of each node's edge to its parent in units of mass:
@@ -195,7 +195,6 @@ func (s *Solver) readPotential(r *Result) {
 	}
 	var whole wide
 	var sum doubled
-	per := int64(len(t.node) + 1)
 	for v := range int32(len(t.node)) {
 		pot := t.tour.potential(v) - base
 		if l := s.space.label[v]; l >= 0 {
@@ -207,11 +206,7 @@ func (s *Solver) readPotential(r *Result) {
 			sum.addProduct(float64(pot-high), s.amount[v])
 			continue
 		}
-		supply := s.supply[v] - 1
-		if v == t.root {
-			supply += per - 1
-		}
-		whole.addProduct(pot, supply/per)
+		whole.addProduct(pot, s.supply[v])
 	}
 	r.Lower = sum.value() * s.space.quantum
 	if s.amount == nil {

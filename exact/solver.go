@@ -8,6 +8,7 @@ import (
 	"time"
 
 	"example.org/barrow/graphio"
+	"example.org/barrow/graphio/shortest"
 )
 
 // Options say what is solved and how far.
@@ -52,11 +53,14 @@ type Solver struct {
 	tree  tree
 	price pricing
 
-	supply []int64   // perturbed, by solver node
+	supply []int64   // by solver node
 	amount []float64 // the same in units of mass; nil where integers are exact
 	unit   float64   // mass of one integer unit
 
-	warm bool      // the tree is of a pair before
+	perturbed []int64 // what the tree carries
+	sign      int64   // of the perturbation
+
+	warm bool      // the tree is not the one to start from
 	flow []float64 // scratch of startCost
 
 	part      []int32 // component of each solver node, once asked for
@@ -76,7 +80,7 @@ func NewSolver(net *graphio.Network, opt Options) (*Solver, error) {
 	}
 	sp := newSpace(net, opt.Unmatched)
 	n := len(sp.label)
-	s := &Solver{net: net, opt: opt, space: sp, supply: make([]int64, n)}
+	s := &Solver{net: net, opt: opt, space: sp, supply: make([]int64, n), sign: 1}
 	s.tree = tree{node: make([]node, n), tour: newTour(n), edge: sp.edge}
 	s.tree.grow(sp.startEdge, sp.startOrder)
 	s.price = newPricing(len(sp.edge))
@@ -88,7 +92,7 @@ func NewSolver(net *graphio.Network, opt Options) (*Solver, error) {
 func (s *Solver) Reset() {
 	if s.warm {
 		s.tree.grow(s.space.startEdge, s.space.startOrder)
-		s.warm = false
+		s.sign, s.warm = 1, false
 	}
 	s.price.cursor = 0
 }
@@ -101,12 +105,7 @@ func (s *Solver) Solve(ctx context.Context, p, q graphio.Sample) (*Result, error
 	if err := s.setSupplies(p, q); err != nil {
 		return nil, err
 	}
-	s.tree.load(s.supply)
-	if s.warm && s.startCost() < s.cost() {
-		s.tree.grow(s.space.startEdge, s.space.startOrder)
-		s.tree.load(s.supply)
-	}
-	s.warm = true
+	s.start(p, q)
 	pivots := 0
 	early := stopRule{gap: s.opt.Gap, every: max(256, len(s.tree.node)/20), last: math.Inf(1)}
 	watch := watcher{call: s.opt.Watch, since: time.Now()}
@@ -190,13 +189,66 @@ func (s *Solver) cost() float64 {
 	return cost
 }
 
+// start chooses the tree: of the pair before, or the first, whichever carries
+// the pair at less cost; where all mass goes to one node or comes from one, that
+// of shortest paths there, which is optimal.
+func (s *Solver) start(p, q graphio.Sample) {
+	if s.opt.Unmatched == 0 && (len(p.Nodes) == 1 || len(q.Nodes) == 1) {
+		s.tree.grow(s.star(p, q))
+		s.load()
+		s.warm = true
+		return
+	}
+	s.load()
+	if s.warm && s.startCost() < s.cost() {
+		s.Reset()
+		s.load()
+	}
+	s.warm = true
+}
+
+// star is the tree of shortest paths to the only node of q, or from that of p:
+// then the perturbation, too, comes from there.
+func (s *Solver) star(p, q graphio.Sample) (parentEdge, order []int32) {
+	middle, direction := q.Nodes[0], shortest.Backward
+	s.sign = 1
+	if len(q.Nodes) > 1 {
+		middle, direction, s.sign = p.Nodes[0], shortest.Forward, -1
+	}
+	sp, n := s.space, s.net.Order()
+	dist, via := make([]float64, n), make([]int32, n)
+	for v := range dist {
+		dist[v] = math.Inf(1)
+	}
+	dist[middle] = 0
+	shortest.Sweep(s.net, dist, direction, via)
+	f := newForest(n)
+	own := make([]int32, s.net.Size())
+	for k := range sp.edge {
+		for _, i := range [...]int32{sp.fwd[k], sp.bwd[k]} {
+			if i != noEdge {
+				own[i] = int32(k)
+			}
+		}
+	}
+	for _, i := range via {
+		if i != noEdge {
+			f.add(sp.edge, own[i])
+		}
+	}
+	for k := range sp.edge { // what cannot be reached
+		f.add(sp.edge, int32(k))
+	}
+	return f.rooted(sp.edge, sp.number[middle])
+}
+
 // startCost is the cost of the same supplies on the tree to start from cold.
 func (s *Solver) startCost() float64 {
 	if s.flow == nil {
 		s.flow = make([]float64, len(s.supply))
 	}
 	for v, b := range s.supply {
-		s.flow[v] = float64(b)
+		s.flow[v] = float64(b) * float64(len(s.supply)+1) // as cost has it
 	}
 	cost := 0.0
 	for i := len(s.space.startOrder) - 1; i >= 0; i-- {

@@ -12,6 +12,7 @@ import (
 	"example.org/barrow/exact"
 	"example.org/barrow/graphio"
 	"example.org/barrow/graphio/graphiotest"
+	"example.org/barrow/graphio/shortest"
 )
 
 func solve(t *testing.T, net *graphio.Network, p, q graphio.Sample, opt exact.Options) *exact.Result {
@@ -293,5 +294,40 @@ func TestReset(t *testing.T) {
 	fresh := solve(t, net, p, q, opt)
 	if again.Pivots != fresh.Pivots || !slices.Equal(again.Flow, fresh.Flow) || !slices.Equal(again.Potential, fresh.Potential) {
 		t.Errorf("%d pivots after Reset, %d on a new solver, or another result", again.Pivots, fresh.Pivots)
+	}
+}
+
+// To one node and from one node the tree of shortest paths is optimal at once,
+// also after other pairs and before them, and one-way.
+func TestToAndFromOneNode(t *testing.T) {
+	for _, c := range append(graphiotest.Cases(), graphiotest.Directed()...) {
+		s, err := exact.NewSolver(c.Net, exact.Options{Shares: true})
+		if err != nil {
+			t.Fatal(err)
+		}
+		at := graphiotest.Point(c.Net.Order() / 2)
+		to := shortest.From(c.Net, c.Net.Order()/2, shortest.Backward)
+		from := shortest.From(c.Net, c.Net.Order()/2, shortest.Forward)
+		wantTo, wantFrom := 0.0, 0.0
+		for i, v := range c.P.Nodes {
+			wantTo += c.P.Values[i] / c.P.Total() * to[v]
+			wantFrom += c.P.Values[i] / c.P.Total() * from[v]
+		}
+		for _, x := range []struct {
+			p, q   graphio.Sample
+			want   float64
+			pivots bool
+		}{{c.P, at, wantTo, false}, {c.P, c.Q, math.NaN(), true}, {at, c.P, wantFrom, false}, {c.Q, c.P, math.NaN(), true}, {c.P, at, wantTo, false}} {
+			r, err := s.Solve(context.Background(), x.p, x.q)
+			if err != nil {
+				t.Fatalf("%s: %v", c.Name, err)
+			}
+			if err := r.Verify(); err != nil {
+				t.Errorf("%s: %v", c.Name, err)
+			}
+			if math.Abs(r.Distance()-x.want) > 1e-12*x.want || !x.pivots && r.Pivots > 0 {
+				t.Errorf("%s: distance %v in %d pivots, want %v in none", c.Name, r.Distance(), r.Pivots, x.want)
+			}
+		}
 	}
 }

@@ -8,18 +8,11 @@ import (
 	"example.org/barrow/graphio"
 )
 
-// setSupplies turns p − q into integer supplies, and perturbs them.
+// setSupplies turns p − q into integer supplies.
 //
 // Counts stay exact: amounts are subtracted, shares brought to the common
 // denominator P·Q. Other masses are scaled by a power of two and rounded, the
 // finest that fits; the flow of the result is made from the true ones.
-//
-// With n nodes a supply b becomes (n+1)·b + 1, and the root takes up the rest
-// (the perturbation behind strongly feasible trees: Cunningham 1976; Ahuja,
-// Magnanti & Orlin 1993, §11.6). A tree edge then carries (n+1) times the true
-// flow plus the number of nodes below it, which is never 0 in any tree: no
-// pivot is degenerate, and the tree that is optimal for these supplies is for
-// the true ones.
 func (s *Solver) setSupplies(p, q graphio.Sample) error {
 	pTotal, qTotal := p.Total(), q.Total()
 	if s.opt.Shares {
@@ -35,15 +28,26 @@ func (s *Solver) setSupplies(p, q graphio.Sample) error {
 	if !s.wholeSupplies(p, q, pTotal, qTotal) {
 		s.roundedSupplies(p, q, pTotal, qTotal)
 	}
-	if err := s.balance(p, q); err != nil {
-		return err
-	}
+	return s.balance(p, q)
+}
+
+// load puts the supplies on the tree, perturbed: with n nodes a supply b becomes
+// (n+1)·b + 1, and the root takes up the rest (the perturbation behind strongly
+// feasible trees: Cunningham 1976; Ahuja, Magnanti & Orlin 1993, §11.6). A tree
+// edge then carries (n+1) times the true flow plus the number of nodes below
+// it, which is never 0 in any tree: no pivot is degenerate, and the tree that
+// is optimal for these supplies is for the true ones. Where s.sign is -1 every
+// node takes up a unit and the root gives it.
+func (s *Solver) load() {
 	n := int64(len(s.supply))
-	for v := range s.supply {
-		s.supply[v] = s.supply[v]*(n+1) + 1
+	if s.perturbed == nil {
+		s.perturbed = make([]int64, n)
 	}
-	s.supply[s.tree.root] -= n
-	return nil
+	for v, b := range s.supply {
+		s.perturbed[v] = b*(n+1) + s.sign
+	}
+	s.perturbed[s.tree.root] -= s.sign * n
+	s.tree.load(s.perturbed)
 }
 
 // room is the largest total of supplies that leaves space for the
