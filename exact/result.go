@@ -156,7 +156,8 @@ func (s *Solver) readFlow(r *Result) {
 }
 
 // wholeFlow is the flow of a node's edge to its parent without the
-// perturbation, which sends a unit up from every node.
+// perturbation, which sends a unit up from every node of the subtree, or down
+// to it.
 func (s *Solver) wholeFlow(x *node) int64 {
 	return (x.flow - s.sign*int64(x.size)) / int64(len(s.tree.node)+1)
 }
