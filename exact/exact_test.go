@@ -172,6 +172,7 @@ func TestSolveAgainstLinearProgram(t *testing.T) {
 			if opt.Unmatched == 0 && !opt.Shares {
 				p, q = p.Share(), q.Share()
 			}
+			s.lay(p, q)
 			if err := s.setSupplies(p, q); err != nil {
 				t.Fatalf("seed %d: %v", seed, err)
 			}
@@ -213,6 +214,7 @@ func TestInvariantsOnLargerNetwork(t *testing.T) {
 	}
 	for range 2 {
 		p, q := randomSample(rng, "p", 3000, 0.5, true), randomSample(rng, "q", 3000, 0.5, false)
+		s.lay(p, q)
 		if err := s.setSupplies(p, q); err != nil {
 			t.Fatal(err)
 		}

@@ -49,9 +49,10 @@ var (
 type Solver struct {
 	net   *graphio.Network
 	opt   Options
-	space *space
+	space *space // nil before the first pair
 	tree  tree
 	price pricing
+	lone  int32 // the one node the space was laid out around, -1 for the middle
 
 	supply []int64   // by solver node
 	amount []float64 // the same in units of mass; nil where integers are exact
@@ -67,8 +68,9 @@ type Solver struct {
 	partCount int
 }
 
-// NewSolver prepares a network. Errors: an option out of range, or no node.
-// Cost: O((nodes + edges) log nodes).
+// NewSolver is a solver for a network. Errors: an option out of range, or no
+// node. Cost: O(1); the first pair prepares the network, in O((nodes + edges)
+// log nodes).
 func NewSolver(net *graphio.Network, opt Options) (*Solver, error) {
 	switch {
 	case net.Order() == 0:
@@ -78,13 +80,47 @@ func NewSolver(net *graphio.Network, opt Options) (*Solver, error) {
 	case !(opt.Gap >= 0 && opt.Gap < 1):
 		return nil, fmt.Errorf("gap %v; want 0 or more and below 1", opt.Gap)
 	}
-	sp := newSpace(net, opt.Unmatched)
+	return &Solver{net: net, opt: opt, lone: noNode}, nil
+}
+
+const noNode = -1
+
+// prepare lays the network out around a node, or around its middle.
+func (s *Solver) prepare(lone int32) {
+	sp := newSpace(s.net, s.opt.Unmatched, lone)
 	n := len(sp.label)
-	s := &Solver{net: net, opt: opt, space: sp, supply: make([]int64, n), sign: 1}
+	s.space, s.lone = sp, lone
+	s.supply, s.amount, s.perturbed, s.flow, s.part = make([]int64, n), nil, nil, nil, nil
 	s.tree = tree{node: make([]node, n), tour: newTour(n), edge: sp.edge}
 	s.tree.grow(sp.startEdge, sp.startOrder)
+	s.sign, s.warm = 1, false
 	s.price = newPricing(len(sp.edge))
-	return s, nil
+}
+
+// lay sees to it that the network is laid out. One that was laid out around the
+// lone node of the pairs before is so again for the first other pair.
+func (s *Solver) lay(p, q graphio.Sample) {
+	lone := noNode
+	if l, _ := s.loneNode(p, q); l != noNode && !s.net.Directed() {
+		lone = int(l)
+	}
+	if s.space == nil {
+		s.prepare(int32(lone))
+	} else if s.lone != noNode && s.lone != int32(lone) {
+		s.prepare(noNode)
+	}
+}
+
+// loneNode is the one node that all mass goes to (sign 1) or comes from (-1).
+func (s *Solver) loneNode(p, q graphio.Sample) (node int32, sign int64) {
+	switch {
+	case s.opt.Unmatched > 0:
+	case len(q.Nodes) == 1:
+		return q.Nodes[0], 1
+	case len(p.Nodes) == 1:
+		return p.Nodes[0], -1
+	}
+	return noNode, 1
 }
 
 // Reset forgets the pairs before: the next solve starts as on a new Solver, and
@@ -102,6 +138,7 @@ func (s *Solver) Reset() {
 // far together with ctx.Err(). Errors: ErrTotals, ErrUnreachable,
 // ErrCertificate, or a sample without mass (Shares).
 func (s *Solver) Solve(ctx context.Context, p, q graphio.Sample) (*Result, error) {
+	s.lay(p, q)
 	if err := s.setSupplies(p, q); err != nil {
 		return nil, err
 	}
@@ -193,8 +230,12 @@ func (s *Solver) cost() float64 {
 // the pair at less cost; where all mass goes to one node or comes from one, that
 // of shortest paths there, which is optimal.
 func (s *Solver) start(p, q graphio.Sample) {
-	if s.opt.Unmatched == 0 && (len(p.Nodes) == 1 || len(q.Nodes) == 1) {
-		s.tree.grow(s.star(p, q))
+	if node, sign := s.loneNode(p, q); node != noNode {
+		s.Reset()
+		if node != s.lone {
+			s.tree.grow(s.star(node, sign))
+		}
+		s.sign = sign
 		s.load()
 		s.warm = true
 		return
@@ -207,20 +248,19 @@ func (s *Solver) start(p, q graphio.Sample) {
 	s.warm = true
 }
 
-// star is the tree of shortest paths to the only node of q, or from that of p:
+// star is the tree of shortest paths to a node, or from it where sign is -1:
 // then the perturbation, too, comes from there.
-func (s *Solver) star(p, q graphio.Sample) (parentEdge, order []int32) {
-	middle, direction := q.Nodes[0], shortest.Backward
-	s.sign = 1
-	if len(q.Nodes) > 1 {
-		middle, direction, s.sign = p.Nodes[0], shortest.Forward, -1
+func (s *Solver) star(node int32, sign int64) (parentEdge, order []int32) {
+	direction := shortest.Backward
+	if sign < 0 {
+		direction = shortest.Forward
 	}
 	sp, n := s.space, s.net.Order()
 	dist, via := make([]float64, n), make([]int32, n)
 	for v := range dist {
 		dist[v] = math.Inf(1)
 	}
-	dist[middle] = 0
+	dist[node] = 0
 	shortest.Sweep(s.net, dist, direction, via)
 	f := newForest(n)
 	own := make([]int32, s.net.Size())
@@ -239,7 +279,7 @@ func (s *Solver) star(p, q graphio.Sample) (parentEdge, order []int32) {
 	for k := range sp.edge { // what cannot be reached
 		f.add(sp.edge, int32(k))
 	}
-	return f.rooted(sp.edge, sp.number[middle])
+	return f.rooted(sp.edge, sp.number[node])
 }
 
 // startCost is the cost of the same supplies on the tree to start from cold.

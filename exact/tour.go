@@ -38,7 +38,7 @@ type place struct {
 // newTour makes room for the tour of a tree of n nodes.
 func newTour(n int) *tour {
 	t := &tour{shift: 6, place: make([]place, n)}
-	for 1<<(2*t.shift) < 2*n && t.shift < 10 {
+	for 1<<(2*t.shift) < n/3 && t.shift < 10 {
 		t.shift++
 	}
 	return t
