@@ -8,6 +8,7 @@ import (
 	"testing"
 
 	"example.org/barrow/graphio"
+	"example.org/barrow/graphio/graphiotest"
 	"gonum.org/v1/gonum/mat"
 	"gonum.org/v1/gonum/optimize/convex/lp"
 )
@@ -238,5 +239,38 @@ func TestInvariantsOnLargerNetwork(t *testing.T) {
 		if err := r.Verify(); err != nil {
 			t.Error(err)
 		}
+	}
+}
+
+// Early results are intervals about the optimum; where mass still runs against
+// a one-way edge nothing is known from above.
+func TestEarlyResultsBound(t *testing.T) {
+	blocked := 0
+	for _, c := range append(graphiotest.Cases(), graphiotest.Directed()...) {
+		s, err := NewSolver(c.Net, Options{Shares: true})
+		if err != nil {
+			t.Fatal(err)
+		}
+		s.lay(c.P, c.Q)
+		if err := s.setSupplies(c.P, c.Q); err != nil {
+			t.Fatal(err)
+		}
+		s.start(c.P, c.Q)
+		early := s.result(c.P, c.Q, 0, false)
+		whole, err := Solve(c.Net, c.P, c.Q, Options{Shares: true})
+		if err != nil {
+			t.Fatalf("%s: %v", c.Name, err)
+		}
+		if math.IsInf(early.Upper, 1) {
+			blocked++
+		} else if err := early.Verify(); err != nil {
+			t.Errorf("%s: %v", c.Name, err)
+		}
+		if slack := 1e-12 * whole.Upper; early.Lower > whole.Lower+slack || early.Upper < whole.Upper-slack {
+			t.Errorf("%s: %v to %v at the start; the optimum is %v", c.Name, early.Lower, early.Upper, whole.Upper)
+		}
+	}
+	if blocked == 0 {
+		t.Error("no case starts against a one-way edge: nothing was tried")
 	}
 }

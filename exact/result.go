@@ -10,7 +10,8 @@ import (
 // A Result is the transport cost from p to q between two bounds, and what
 // proves them. Shares: a mean distance; amounts: mass times length.
 type Result struct {
-	// Lower is Σ φ(p − q) of the potential, Upper Σ ℓ|f| of the flow.
+	// Lower is Σ φ(p − q) of the potential, Upper Σ ℓ|f| of the flow: +Inf
+	// while the flow of an early result runs against a one-way edge (below 0).
 	Lower, Upper float64
 
 	// Flow holds, by edge of the network, the mass that moves along it: above 0
@@ -51,10 +52,13 @@ func (r *Result) closed() bool {
 	return r.Upper-r.Lower <= 1e-9*r.Upper+strayMass(r.opt, r.p, r.q)*(high-low)
 }
 
-// Gap is (Upper − Lower) / Upper, 0 where both are 0.
+// Gap is (Upper − Lower) / Upper, 0 where both are 0 and 1 where Upper is +Inf.
 func (r *Result) Gap() float64 {
-	if r.Upper <= r.Lower {
+	switch {
+	case r.Upper <= r.Lower:
 		return 0
+	case math.IsInf(r.Upper, 1):
+		return 1
 	}
 	return (r.Upper - r.Lower) / r.Upper
 }
@@ -71,6 +75,9 @@ func (s *Solver) result(p, q graphio.Sample, pivots int, optimal bool) *Result {
 		r.Unmatched = make([]float64, s.net.Order())
 	}
 	s.readFlow(r)
+	if !optimal && s.blocked(r) >= 0 {
+		r.Upper = math.Inf(1)
+	}
 	if optimal {
 		s.readPotential(r)
 	} else {

@@ -6,6 +6,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"time"
 
 	"github.com/spf13/pflag"
 
@@ -25,6 +26,7 @@ type settings struct {
 
 	method, mass, calibrate string
 	unmatched, gap          float64
+	timeLimit               time.Duration
 
 	seed    uint64
 	threads int
@@ -130,6 +132,9 @@ func (set *settings) check() error {
 	}
 	if set.gap < 0 || set.gap >= 1 || math.IsNaN(set.gap) {
 		return usageError{fmt.Sprintf("--gap %v; want 0 or more and below 1, like 0.01", set.gap)}
+	}
+	if set.timeLimit < 0 {
+		return usageError{fmt.Sprintf("--time-limit %v; want 0 or more, like 90s or 5m", set.timeLimit)}
 	}
 	if has("calibrate") {
 		if _, err := set.calibration(); err != nil {

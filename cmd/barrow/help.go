@@ -125,6 +125,9 @@ Method
            variation    half the sum of differences, blind to where nodes lie
   --gap G               let exact stop once (upper - lower) / upper is at most G,
                         like 0.01; 0, the default, goes on to the end
+  --time-limit T        let exact stop after T, like 90s or 5m, and report the
+                        interval proved by then; 0, the default, is no limit.
+                        Ctrl-C shows it too, and writes nothing
 ` + comparisonHelp + replayHelp + `
 Results
   --out DIR             where they go; without it nothing is written:

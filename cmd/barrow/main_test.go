@@ -2,8 +2,10 @@ package main
 
 import (
 	"bytes"
+	"context"
 	"encoding/json"
 	"errors"
+	"io"
 	"os"
 	"os/exec"
 	"path/filepath"
@@ -15,6 +17,9 @@ import (
 	"time"
 
 	"github.com/rogpeppe/go-internal/testscript"
+
+	"example.org/barrow/graphio"
+	"example.org/barrow/graphio/graphiotest"
 )
 
 func TestMain(m *testing.M) {
@@ -211,4 +216,38 @@ func recordedFlags(t *testing.T, dir string) []string {
 	}
 	slices.Sort(names)
 	return names
+}
+
+// An interrupted pair fails, and knows what it has proved.
+func TestInterruptedPairKeepsItsInterval(t *testing.T) {
+	net := graphiotest.Grid(60, 60, 1)
+	other := graphiotest.Smooth(net, 2)
+	other.Name = "other"
+	samples, err := graphio.NewSamples(net.Order(), []graphio.Sample{graphiotest.Smooth(net, 1), other})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if samples, err = samples.Shares(); err != nil {
+		t.Fatal(err)
+	}
+	ctx, cancel := context.WithCancel(context.Background())
+	cancel()
+	s := &session{ctx: ctx, stdout: io.Discard, stderr: io.Discard}
+	var early, whole comparison
+	d := &data{net: net}
+	if err := s.solveExactly(&settings{}, d, samples.At(0), samples.At(1), &early); !errors.Is(err, context.Canceled) {
+		t.Fatalf("got %v, want %v", err, context.Canceled)
+	}
+	s.ctx = context.Background()
+	if err := s.solveExactly(&settings{}, d, samples.At(0), samples.At(1), &whole); err != nil {
+		t.Fatal(err)
+	}
+	if !early.late || !(early.lower < whole.distance && whole.distance < early.upper) {
+		t.Errorf("interrupted: %v to %v, late %v; the distance is %v", early.lower, early.upper, early.late, whole.distance)
+	}
+	var text strings.Builder
+	early.summary(&text, &settings{method: "exact"}, d)
+	if !strings.Contains(text.String(), "stopped at a gap of") {
+		t.Errorf("summary: %s", &text)
+	}
 }

@@ -2,6 +2,7 @@ package main
 
 import (
 	"cmp"
+	"context"
 	"fmt"
 	"io"
 	"math"
@@ -24,6 +25,7 @@ func (s *session) makePair(args []string) (*comparison, error) {
 	set.input()
 	set.comparison("exact")
 	set.flags.Float64Var(&set.gap, "gap", 0, "")
+	set.flags.DurationVar(&set.timeLimit, "time-limit", 0, "")
 	set.results("")
 	rest, err := set.parse(args)
 	if err != nil {
@@ -36,6 +38,7 @@ func (s *session) makePair(args []string) (*comparison, error) {
 	if len(rest) != 2 {
 		return nil, usageError{fmt.Sprintf("%s named; want two: barrow pair A B", several(len(rest), "sample"))}
 	}
+	s.progress.progressTo(s.stderr)
 	d, err := s.load(set)
 	if err != nil {
 		return nil, err
@@ -43,11 +46,15 @@ func (s *session) makePair(args []string) (*comparison, error) {
 	return s.compare(set, d, rest, recorded)
 }
 
+// lateWarning is recorded of a run whose bytes depend on the clock.
+const lateWarning = "stopped by --time-limit: another run may get further"
+
 // A comparison is what is known of one pair.
 type comparison struct {
 	from, to               string
 	distance, lower, upper float64       // NaN bounds where none are known
 	proof                  *exact.Result // nil unless exact
+	late                   bool          // the time limit came before the optimum
 	potential              []float64     // nil where there is none
 }
 
@@ -76,9 +83,17 @@ func (s *session) compare(set *settings, d *data, names []string, recorded *reco
 	}
 	c, err := s.solve(set, d, p, q)
 	if err != nil {
+		if c != nil && c.proof != nil { // interrupted: say what is known, and keep nothing
+			s.progress.end()
+			c.summary(s.stdout, set, d)
+		}
 		return nil, err
 	}
+	s.progress.end()
 	rec.Counts["pairs"] = 1
+	if c.late {
+		rec.Warnings = append(rec.Warnings, lateWarning)
+	}
 	show := func(w io.Writer) { c.summary(w, set, d) }
 	if !keep {
 		show(s.stdout)
@@ -180,24 +195,42 @@ func (s *session) solve(set *settings, d *data, p, q graphio.Sample) (*compariso
 	return c, err
 }
 
+// solveExactly solves to the end, to the gap or to the time limit. Interrupted,
+// it fails, and c still holds the interval reached.
 func (s *session) solveExactly(set *settings, d *data, p, q graphio.Sample, c *comparison) error {
-	solver, err := exact.NewSolver(d.net, exact.Options{Unmatched: set.unmatched, Gap: set.gap})
+	opt := exact.Options{Unmatched: set.unmatched, Gap: set.gap}
+	if s.progress.shown() {
+		opt.Watch = s.progress.interval
+	}
+	solver, err := exact.NewSolver(d.net, opt)
 	if err != nil {
 		return err
 	}
-	r, err := solver.Solve(s.ctx, p, q)
-	if err != nil {
-		if s.ctx.Err() != nil && r != nil {
-			s.note(fmt.Sprintf("stopped early: the distance lies between %s and %s", human(r.Lower), human(r.Upper)))
+	ctx := s.ctx
+	if set.timeLimit > 0 {
+		var cancel context.CancelFunc
+		ctx, cancel = context.WithTimeout(ctx, set.timeLimit)
+		defer cancel()
+	}
+	r, stopped := solver.Solve(ctx, p, q)
+	if r == nil {
+		return stopped
+	}
+	if stopped == nil || !math.IsInf(r.Upper, 1) { // else there is no flow to check yet
+		if err := r.Verify(); err != nil {
+			return err
 		}
-		return err
-	}
-	if err := r.Verify(); err != nil {
-		return err
 	}
 	c.proof, c.potential = r, r.Potential
 	c.distance, c.lower, c.upper = r.Distance(), r.Lower, r.Upper
-	return nil
+	c.late = stopped != nil
+	if stopped != nil && s.ctx.Err() == nil {
+		if math.IsInf(r.Upper, 1) {
+			return fmt.Errorf("after %v all that is known is that the distance is at least %s: the one-way edges leave no way found yet; want a longer --time-limit", set.timeLimit, human(r.Lower))
+		}
+		return nil
+	}
+	return stopped
 }
 
 // writeComparison writes pairs.csv and what proves it.
@@ -218,8 +251,20 @@ func (f *folder) writeComparison(d *data, method string, c *comparison) error {
 func (c *comparison) summary(w io.Writer, set *settings, d *data) {
 	fmt.Fprintf(w, "network   %s\n", networkLine(d.net))
 	fmt.Fprintf(w, "compared  %s with %s, as %ss\n", c.from, c.to, set.mass)
-	fmt.Fprintf(w, "distance  %s, %s\n", human(c.distance), c.meaning(set))
+	if c.late && math.IsInf(c.upper, 1) {
+		fmt.Fprintf(w, "distance  at least %s; the one-way edges leave no way found yet\n", human(c.lower))
+		return
+	}
+	if c.late {
+		fmt.Fprintf(w, "distance  %s to %s, %s\n", human(c.lower), human(c.upper), c.meaning(set))
+	} else {
+		fmt.Fprintf(w, "distance  %s, %s\n", human(c.distance), c.meaning(set))
+	}
 	switch {
+	case c.late && set.timeLimit > 0:
+		fmt.Fprintf(w, "proof     stopped by --time-limit at a gap of %s; both ends are proved\n", percent(c.proof.Gap()))
+	case c.late:
+		fmt.Fprintf(w, "proof     stopped at a gap of %s; both ends are proved\n", percent(c.proof.Gap()))
 	case c.proof != nil && c.proof.Optimal:
 		fmt.Fprintln(w, "proof     flow and potential agree: no way of moving the mass is shorter")
 	case c.proof != nil:
@@ -273,7 +318,11 @@ func (c *comparison) heaviest(w io.Writer, set *settings, net *graphio.Network) 
 		return
 	}
 	certain := c.proof.Unavoidable()
-	fmt.Fprintf(w, "links     mass moves along %s; the heaviest (* in every shortest way of moving it):\n", several(len(order), "edge"))
+	star := "the heaviest"
+	if certain != nil {
+		star += " (* in every shortest way of moving it)"
+	}
+	fmt.Fprintf(w, "links     mass moves along %s; %s:\n", several(len(order), "edge"), star)
 	for _, i := range order[:min(most, len(order))] {
 		from, to, f := net.Name(int(edges[i].From)), net.Name(int(edges[i].To)), c.proof.Flow[i]
 		if f < 0 {

@@ -1,7 +1,9 @@
 package main
 
 import (
+	"fmt"
 	"io"
+	"math"
 	"os"
 	"sync"
 	"time"
@@ -31,6 +33,32 @@ func (p *progress) progressTo(w io.Writer) {
 	if f, ok := w.(*os.File); ok && term.IsTerminal(int(f.Fd())) {
 		p.to = w
 	}
+}
+
+// shown says whether anybody sees it.
+func (p *progress) shown() bool { return p.to != nil }
+
+// interval shows what is proved so far of a single pair.
+func (p *progress) interval(lower, upper float64) {
+	p.lock.Lock()
+	defer p.lock.Unlock()
+	if p.to == nil {
+		return
+	}
+	if p.stage != "pair" {
+		p.finish()
+		p.stage = "pair"
+		p.bar = progressbar.NewOptions(-1,
+			progressbar.OptionSetWriter(p.to),
+			progressbar.OptionSpinnerType(9),
+			progressbar.OptionClearOnFinish())
+	}
+	gap := "no way along the one-way edges yet"
+	if !math.IsInf(upper, 1) {
+		gap = fmt.Sprintf("at most %s, gap %s", human(upper), percent((upper-lower)/upper))
+	}
+	p.bar.Describe(fmt.Sprintf("at least %s, %s", human(lower), gap))
+	p.bar.Add(1)
 }
 
 func (p *progress) report(stage string, done, total int) {
@@ -64,6 +92,7 @@ func (p *progress) end() {
 func (p *progress) finish() {
 	if p.bar != nil {
 		p.bar.Finish()
+		p.bar.Clear()
 	}
 	p.bar, p.stage = nil, ""
 }
