@@ -1,7 +1,7 @@
 // Package dual compares distributions on a network from vectors that are made
 // once for each sample: the multiscale estimator of the transport distance,
-// its witness, certified lower bounds from any potential, kernel discrepancy
-// and total variation.
+// its witness, flows that bound the distance of every pair from above, certified
+// lower bounds from any potential, kernel discrepancy and total variation.
 //
 // Most users need three calls:
 //

@@ -127,6 +127,15 @@ func (m *Multiscale) Embed(ctx context.Context, samples *graphio.Samples, thread
 // panels calls work for every panel of rows, with memory of its thread's own,
 // until the context ends.
 func panels(ctx context.Context, rows, threads int, progress func(done, total int), work func(p *diffusion.Panel[float32], first, count int)) {
+	each(ctx, rows, diffusion.Lanes, threads, progress, func() func(first, count int) {
+		var p diffusion.Panel[float32]
+		return func(first, count int) { work(&p, first, count) }
+	})
+}
+
+// each calls work for every batch of rows until the context ends; start makes
+// the function of one thread.
+func each(ctx context.Context, rows, batch, threads int, progress func(done, total int), start func() func(first, count int)) {
 	if threads <= 0 {
 		threads = runtime.GOMAXPROCS(0)
 	}
@@ -139,20 +148,20 @@ func panels(ctx context.Context, rows, threads int, progress func(done, total in
 		lock.Lock()
 		defer lock.Unlock()
 		first = next
-		next = min(rows, first+diffusion.Lanes)
+		next = min(rows, first+batch)
 		return first, next - first
 	}
-	for range min(threads, (rows+diffusion.Lanes-1)/diffusion.Lanes) {
+	for range min(threads, (rows+batch-1)/batch) {
 		wait.Add(1)
 		go func() {
 			defer wait.Done()
-			var p diffusion.Panel[float32]
+			work := start()
 			for ctx.Err() == nil {
 				first, count := take()
 				if count == 0 {
 					return
 				}
-				work(&p, first, count)
+				work(first, count)
 				lock.Lock()
 				done += count
 				if progress != nil {
