@@ -163,6 +163,7 @@ func (s *Solver) Solve(ctx context.Context, p, q graphio.Sample) (*Result, error
 			if r := s.result(p, q, pivots, false); r.Gap() <= s.opt.Gap {
 				return r, nil
 			}
+			early.wait(pivots)
 		}
 	}
 	r := s.result(p, q, pivots, true)
@@ -179,19 +180,23 @@ func (s *Solver) Solve(ctx context.Context, p, q graphio.Sample) (*Result, error
 
 // stopRule says when a look at the bounds is worth its price, a sweep over the
 // network: while a round of pivots still lowers the cost by much more than the
-// gap asked for, the gap is larger than that.
+// gap asked for, the gap is larger than that; and a look in vain is not
+// followed by another before some rounds have passed.
 type stopRule struct {
 	gap   float64
 	every int
 	last  float64 // cost at the last round
+	next  int     // pivots before which no look is due
 }
+
+func (e *stopRule) wait(pivots int) { e.next = pivots + 5*e.every }
 
 func (e *stopRule) due(pivots int, s *Solver) bool {
 	if e.gap == 0 || pivots%e.every != 0 {
 		return false
 	}
 	cost := s.cost()
-	due := e.last-cost <= e.gap*cost
+	due := e.last-cost <= e.gap*cost && pivots >= e.next
 	e.last = cost
 	return due
 }

@@ -2,11 +2,13 @@
 //
 //	go run ./benchmarks/exact
 //	go run ./benchmarks/exact --sizes 1000000 --families road --samples smooth --runs 1
+//	go run ./benchmarks/exact --claims --sizes 10000,100000
+//	go run ./benchmarks/exact --stress 5m
 //
 // Each instance is written to a file in whole numbers. Then, run after run,
 // every solver in turn solves it in a process of its own, so that all see the
 // same machine. Optima must agree to the last digit. It prints a Markdown
-// table. Time runs from a network in memory to the optimum, what prepares a
+// table. With --claims and --stress it runs barrow alone. Time runs from a network in memory to the optimum, what prepares a
 // solver included. Seconds and MiB are medians; a ratio is the median over the runs of the
 // other's time to barrow's in the same run, with the least and the greatest.
 package main
@@ -28,6 +30,8 @@ type options struct {
 	seed           uint64
 	limit          time.Duration
 	slow           time.Duration
+	claims         bool
+	stress         time.Duration
 	source, lemon  string
 	data, distance string
 }
@@ -51,8 +55,24 @@ func main() {
 	pflag.StringVar(&opt.source, "lemon-source", "benchmarks/exact/lemon/lemon.cc", "the driver to build")
 	pflag.StringVar(&opt.data, "data", "", "a folder of real sets to measure as well")
 	pflag.StringVar(&opt.distance, "pairs", "testdata/reference_distances.csv", "which pairs of the real sets")
+	pflag.BoolVar(&opt.claims, "claims", false, "measure barrow alone: ties, empty areas, gaps, unmatched mass, pairs in a row")
+	pflag.DurationVar(&opt.stress, "stress", 0, "solve random cases for so long, and check every proof")
 	pflag.Parse()
-	if err := measure(opt); err != nil {
+	run := measure
+	switch {
+	case opt.claims:
+		run = func(opt options) error {
+			for _, n := range opt.sizes {
+				if err := claims(n, opt.runs, opt.seed); err != nil {
+					return err
+				}
+			}
+			return nil
+		}
+	case opt.stress > 0:
+		run = func(opt options) error { return stress(opt.stress, opt.seed) }
+	}
+	if err := run(opt); err != nil {
 		fmt.Fprintln(os.Stderr, err)
 		os.Exit(1)
 	}

@@ -21,15 +21,14 @@ import (
 type run struct {
 	optimum string  // a whole number
 	seconds float64 // from a network in memory to the optimum
-	prepare float64 // the part of it before the samples matter
 	grown   int64   // bytes the process grew by meanwhile
 	pivots  int     // of barrow
 	late    bool    // it was stopped at the time limit
 }
 
 // solveFile is the process that solves an instance with barrow and prints the
-// run as lemon/lemon.cc does, with the number of pivots after it: Solve with
-// its certificate, NewSolver as what prepares. Verify is not counted.
+// run as lemon/lemon.cc does, with the number of pivots after it: NewSolver and
+// Solve with its certificate, nothing that prepares. Verify is not counted.
 func solveFile(path string) error {
 	net, p, q, err := readInstance(path)
 	if err != nil {
@@ -41,7 +40,6 @@ func solveFile(path string) error {
 	if err != nil {
 		return err
 	}
-	prepared := time.Now()
 	r, err := solver.Solve(context.Background(), p, q)
 	solved := time.Now()
 	_, grown := mark.Bytes()
@@ -51,7 +49,7 @@ func solveFile(path string) error {
 	if err := r.Verify(); err != nil {
 		return err
 	}
-	fmt.Printf("%v %.6f %.6f %d %d\n", cost(net, r.Flow), solved.Sub(prepared).Seconds(), prepared.Sub(start).Seconds(), grown>>10, r.Pivots)
+	fmt.Printf("%v %.6f %.6f %d %d\n", cost(net, r.Flow), solved.Sub(start).Seconds(), 0.0, grown>>10, r.Pivots)
 	return nil
 }
 
@@ -88,8 +86,9 @@ func solveBy(limit time.Duration, command ...string) (run, error) {
 	if len(fields) > 4 {
 		r.pivots, err = strconv.Atoi(fields[4])
 	}
-	_, scan := fmt.Sscan(strings.Join(fields[:4], " "), &r.optimum, &r.seconds, &r.prepare, &kib)
-	r.seconds += r.prepare
+	var prepare float64
+	_, scan := fmt.Sscan(strings.Join(fields[:4], " "), &r.optimum, &r.seconds, &prepare, &kib)
+	r.seconds += prepare
 	r.grown = kib << 10
 	return r, errors.Join(err, scan)
 }

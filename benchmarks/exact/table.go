@@ -7,8 +7,8 @@ import (
 )
 
 func printHeader() {
-	fmt.Println("| network | nodes | edges | samples | barrow, s | NewSolver, s | pivots a node | MiB | network simplex : barrow | MiB | cost scaling : barrow | MiB |")
-	fmt.Println("|---|--:|--:|---|--:|--:|--:|--:|--:|--:|--:|--:|")
+	fmt.Println("| network | nodes | edges | samples | barrow, s | pivots a node | MiB | network simplex : barrow | MiB | cost scaling : barrow | MiB |")
+	fmt.Println("|---|--:|--:|---|--:|--:|--:|--:|--:|--:|--:|")
 }
 
 // printRow prints what the solvers did: barrow's runs first, then LEMON's
@@ -18,7 +18,6 @@ func printRow(in instance, runs [][]run) {
 	row := []string{
 		in.family, fmt.Sprint(in.nodes), fmt.Sprint(len(in.edge)), in.samples,
 		fmt.Sprintf("%.3g", middle(own, func(r run) float64 { return r.seconds })),
-		fmt.Sprintf("%.3g", middle(own, func(r run) float64 { return r.prepare })),
 		fmt.Sprintf("%.2f", float64(own[0].pivots)/float64(in.nodes)),
 		mebibytes(own),
 	}
