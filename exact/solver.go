@@ -189,7 +189,7 @@ type stopRule struct {
 	next  int     // pivots before which no look is due
 }
 
-func (e *stopRule) wait(pivots int) { e.next = pivots + 5*e.every }
+func (e *stopRule) wait(pivots int) { e.next = pivots + 3*e.every }
 
 func (e *stopRule) due(pivots int, s *Solver) bool {
 	if e.gap == 0 || pivots%e.every != 0 {
