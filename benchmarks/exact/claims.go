@@ -133,12 +133,11 @@ func (c *claimant) cold(text string, net *graphio.Network, p, q graphio.Sample, 
 			return nil
 		}
 	}
-	slices.Sort(seconds)
-	middle := seconds[len(seconds)/2]
+	took := middle(seconds)
 	if c.plain == 0 {
-		c.plain, c.distance = middle, r.Distance()
+		c.plain, c.distance = took, r.Distance()
 	}
-	fmt.Printf("| %d | %s | %.3g | %.2f | %.2f |\n", c.nodes, text, middle, float64(r.Pivots)/float64(net.Order()), middle/c.plain)
+	fmt.Printf("| %d | %s | %.3g | %.2f | %.2f |\n", c.nodes, text, took, float64(r.Pivots)/float64(net.Order()), took/c.plain)
 	return nil
 }
 

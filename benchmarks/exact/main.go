@@ -7,7 +7,7 @@
 //
 // Each instance is written to a file in whole numbers. Then, run after run,
 // every solver in turn solves it in a process of its own, so that all see the
-// same machine. Optima must agree to the last digit. It prints a Markdown
+// same machine; short runs are repeated in it, once it is warm. Optima must agree to the last digit. It prints a Markdown
 // table. With --claims and --stress it runs barrow alone. Time runs from a network in memory to the optimum, what prepares a
 // solver included. Seconds and MiB are medians; a ratio is the median over the runs of the
 // other's time to barrow's in the same run, with the least and the greatest.

@@ -17,7 +17,7 @@ func printRow(in instance, runs [][]run) {
 	own := runs[0]
 	row := []string{
 		in.family, fmt.Sprint(in.nodes), fmt.Sprint(len(in.edge)), in.samples,
-		fmt.Sprintf("%.3g", middle(own, func(r run) float64 { return r.seconds })),
+		fmt.Sprintf("%.3g", middleOf(own, func(r run) float64 { return r.seconds })),
 		fmt.Sprintf("%.2f", float64(own[0].pivots)/float64(in.nodes)),
 		mebibytes(own),
 	}
@@ -31,11 +31,15 @@ func printRow(in instance, runs [][]run) {
 	fmt.Printf("| %s |\n", strings.Join(row, " | "))
 }
 
-func middle(runs []run, of func(run) float64) float64 {
+func middleOf(runs []run, of func(run) float64) float64 {
 	list := make([]float64, len(runs))
 	for i, r := range runs {
 		list[i] = of(r)
 	}
+	return middle(list)
+}
+
+func middle(list []float64) float64 {
 	slices.Sort(list)
 	return list[len(list)/2]
 }
@@ -44,7 +48,7 @@ func mebibytes(runs []run) string {
 	if runs[0].late {
 		return ""
 	}
-	return fmt.Sprintf("%.1f", middle(runs, func(r run) float64 { return float64(r.grown) / (1 << 20) }))
+	return fmt.Sprintf("%.1f", middleOf(runs, func(r run) float64 { return float64(r.grown) / (1 << 20) }))
 }
 
 // ratio is the other's time to barrow's, run by run: the median, and the least
