@@ -1,5 +1,7 @@
 package exact
 
+import "math"
+
 // tree is a spanning tree of the solver's network as a basis of the simplex:
 // every node but the root hangs from its parent by an edge that carries the
 // net supply of its subtree, up to the parent where flow > 0 and down from it
@@ -146,50 +148,43 @@ func (t *tree) pivot(i int32, forward bool, excess int64) int64 {
 	}
 	top := t.collect(from, to)
 	stop := t.search(excess)
-	out := stop.node
-
-	for a := from; a != top; a = t.node[a].parent {
-		t.node[a].flow -= stop.at
-	}
-	for b := to; b != top; b = t.node[b].parent {
-		t.node[b].flow += stop.at
-	}
-
-	in, under, flow := from, to, stop.at
 	drop := t.tour.potential(from) - t.tour.potential(to)
-	d := length - drop
+	in, under, sent, d := from, to, -stop.at, length-drop
 	if stop.side < 0 {
-		in, under, flow, d = to, from, -stop.at, -d
+		in, under, sent, d = to, from, -sent, -d
 	}
-	t.rehang(in, out, under, top)
+	t.rehang(in, stop.node, under, top, sent)
 	x := &t.node[in]
-	x.parent, x.edge, x.flow = under, i, flow
+	x.parent, x.edge, x.flow = under, i, -sent
 	x.width = t.edge[i].fwd + t.edge[i].bwd
 	t.tour.move(t.stem, under, d)
 	return stop.at
 }
 
 // collect lists in t.stops every edge on the tree path between the two ends
-// whose flow runs along the path from one to the other, and returns the node
-// where the path turns down.
+// whose flow runs along the path from one to the other, the first to come down
+// to 0 in front, and returns the node where the path turns down.
 func (t *tree) collect(from, to int32) (top int32) {
 	t.stops = t.stops[:0]
+	first, least := 0, int64(math.MaxInt64)
 	a, b := from, to
 	for a != b {
 		// The end with fewer nodes below cannot be above the other.
+		s := stopPoint{node: a, side: 1}
 		if x := &t.node[a]; x.size <= t.node[b].size {
-			if x.flow > 0 {
-				t.stops = append(t.stops, stopPoint{at: x.flow, node: a, side: 1})
+			s.at, a = x.flow, x.parent
+		} else {
+			y := &t.node[b]
+			s, b = stopPoint{at: -y.flow, node: b, side: -1}, y.parent
+		}
+		if s.at > 0 {
+			if s.at < least {
+				first, least = len(t.stops), s.at
 			}
-			a = x.parent
-			continue
+			t.stops = append(t.stops, s)
 		}
-		y := &t.node[b]
-		if y.flow < 0 {
-			t.stops = append(t.stops, stopPoint{at: -y.flow, node: b, side: -1})
-		}
-		b = y.parent
 	}
+	t.stops[0], t.stops[first] = t.stops[first], t.stops[0]
 	return a
 }
 
@@ -197,51 +192,64 @@ func (t *tree) collect(from, to int32) (top int32) {
 // where something is still saved beyond, and returns the one where not. No
 // two stops are equal, since an edge of a tree always carries flow.
 func (t *tree) search(excess int64) stopPoint {
-	heap := t.stops
-	less := func(i, j int) bool { return heap[i].at < heap[j].at }
-	down := func(i int) {
-		for {
-			c := 2*i + 1
-			if c >= len(heap) {
-				return
-			}
-			if c+1 < len(heap) && less(c+1, c) {
-				c++
-			}
-			if !less(c, i) {
-				return
-			}
-			heap[i], heap[c] = heap[c], heap[i]
-			i = c
-		}
-	}
-	for i := len(heap)/2 - 1; i >= 0; i-- {
-		down(i)
-	}
-	for {
-		s := heap[0]
+	s := t.stops[0]
+	heap := t.stops[1:]
+	for made := false; ; {
 		width := t.node[s.node].width
 		excess -= width
 		if excess <= 0 {
 			return s
 		}
 		t.tour.raise(s.node, int64(-s.side)*width)
+		if !made {
+			for i := len(heap)/2 - 1; i >= 0; i-- {
+				sink(heap, i)
+			}
+			made = true
+		}
+		s = heap[0]
 		heap[0] = heap[len(heap)-1]
 		heap = heap[:len(heap)-1]
-		down(0)
+		sink(heap, 0)
+	}
+}
+
+// sink moves stop i of a heap to its place.
+func sink(heap []stopPoint, i int) {
+	for {
+		c := 2*i + 1
+		if c >= len(heap) {
+			return
+		}
+		if c+1 < len(heap) && heap[c+1].at < heap[c].at {
+			c++
+		}
+		if heap[c].at >= heap[i].at {
+			return
+		}
+		heap[i], heap[c] = heap[c], heap[i]
+		i = c
 	}
 }
 
 // rehang turns the parents around on the stem from node in up to node out,
 // whose edge leaves, and moves the count of the subtree from the nodes above
-// out to the nodes from under up. It leaves the stem in t.stem.
-func (t *tree) rehang(in, out, under, top int32) {
+// out to the nodes from under up. On its way it adds what is sent to the flows
+// on the side of in, and takes it off those on the other. It leaves the stem in
+// t.stem.
+func (t *tree) rehang(in, out, under, top int32, sent int64) {
 	moved := t.node[out].size
-	for a := t.node[out].parent; a != top; a = t.node[a].parent {
-		t.node[a].size -= moved
+	for a := t.node[out].parent; a != top; {
+		x := &t.node[a]
+		x.flow += sent
+		x.size -= moved
+		a = x.parent
 	}
-	for b := under; b != top; b = t.node[b].parent {
-		t.node[b].size += moved
+	for b := under; b != top; {
+		x := &t.node[b]
+		x.flow -= sent
+		x.size += moved
+		b = x.parent
 	}
 	t.stem = append(t.stem[:0], in)
 	below := t.node[in]
@@ -250,7 +258,7 @@ func (t *tree) rehang(in, out, under, top int32) {
 		p := below.parent
 		t.stem = append(t.stem, p)
 		above := t.node[p]
-		t.node[p] = node{flow: -below.flow, width: below.width, parent: v, edge: below.edge, size: moved - below.size}
+		t.node[p] = node{flow: -below.flow - sent, width: below.width, parent: v, edge: below.edge, size: moved - below.size}
 		below, v = above, p
 	}
 }
