@@ -8,6 +8,7 @@ import (
 	"math"
 	"runtime/debug"
 	"slices"
+	"time"
 
 	"example.org/barrow/dual/pairwise"
 	"example.org/barrow/graphio"
@@ -15,7 +16,10 @@ import (
 
 // matrix compares all samples with each other.
 func (s *session) matrix(args []string) error {
-	_, _, err := s.makeMatrix(args)
+	d, r, err := s.makeMatrix(args)
+	if err == nil && r != nil {
+		s.offerExact(d, r)
+	}
 	return err
 }
 
@@ -133,6 +137,27 @@ func (s *session) cautions(rec *record, d *data, set *settings, r *pairwise.Resu
 		say("with so few samples every pair was solved to calibrate: --method exact takes no longer and has no error")
 	case c.HeldOut < 20:
 		say(fmt.Sprintf("only %s held out to measure the error on: take it as a rough guess", several(c.HeldOut, "pair")))
+	}
+}
+
+// patience is how long a user is taken to be willing to wait for all pairs.
+const patience = 2 * time.Minute
+
+// offerExact tells, after an estimate, when every pair could be solved in
+// minutes. It is no part of the record, as it depends on the machine.
+func (s *session) offerExact(d *data, r *pairwise.Result) {
+	c := r.Calibration
+	if c == nil || len(c.Pairs) == 0 || len(c.Pairs) == pairCount(d) {
+		return
+	}
+	for _, p := range s.phases {
+		if p.Name != "calibrate" {
+			continue
+		}
+		took := time.Duration(p.Seconds * float64(pairCount(d)) / float64(len(c.Pairs)) * float64(time.Second))
+		if took <= patience {
+			s.note(fmt.Sprintf("all %s exactly would take some %s here: --method exact", several(pairCount(d), "pair"), several(1+int(took.Seconds()), "second")))
+		}
 	}
 }
 
