@@ -35,8 +35,8 @@ func (e *Embedding) Terms(i, j int, dst []float64) []float64 {
 	a, b := e.Row(i), e.Row(j)
 	for k, s := range e.Scales {
 		sum := 0.0
-		for begin := s.Begin; begin < s.End; begin += strip {
-			end := min(begin+strip, s.End)
+		for begin := s.Begin; begin < s.End; begin += Strip {
+			end := min(begin+Strip, s.End)
 			sum += manhattan(a[begin:end], b[begin:end])
 		}
 		dst[k] = sum
@@ -44,19 +44,20 @@ func (e *Embedding) Terms(i, j int, dst []float64) []float64 {
 	return dst
 }
 
-// Distance is Σ_k weights_k Terms_k of samples i and j. Cost: O(Width).
+// Distance is Σ_k weights_k Terms_k of samples i and j, to some 1e-6: sums run
+// in float32 first. It is the same bits whichever of i and j comes first, and 0
+// for equal vectors. Cost: O(Width).
 func (e *Embedding) Distance(i, j int, weights []float64) float64 {
-	var terms [64]float64
-	sum := 0.0
-	for k, t := range e.Terms(i, j, terms[:len(e.Scales)]) {
-		sum += float64(weights[k] * t)
-	}
-	return sum
+	var d [1]float64
+	e.Distances(d[:], i, i+1, j, j+1, weights)
+	return d[0]
 }
 
-// strip is how many columns are added up at a time: two rows of them fit the
-// first cache.
-const strip = 2048
+// Strip is how many columns are added up at a time: the rows of two sides of a
+// square of pairs stay in the second cache meanwhile. AddDistances over parts
+// of the columns gives the same bits as over all where the parts are multiples
+// of it.
+const Strip = 2048
 
 // Distances sets dst, row-major, to the distances of every sample of [i0, i1)
 // to every sample of [j0, j1), each the same bits as Distance. It goes through
@@ -68,19 +69,29 @@ func (e *Embedding) Distances(dst []float64, i0, i1, j0, j1 int, weights []float
 	term := make([]float64, len(dst))
 	for k, s := range e.Scales {
 		clear(term)
-		for begin := s.Begin; begin < s.End; begin += strip {
-			end := min(begin+strip, s.End)
-			at := 0
-			for i := i0; i < i1; i++ {
-				a := e.Row(i)[begin:end]
-				for j := j0; j < j1; j++ {
-					term[at] += manhattan(a, e.Row(j)[begin:end])
-					at++
-				}
-			}
-		}
+		e.add(term, i0, i1, j0, j1, s.Begin, s.End)
 		for at, t := range term {
 			dst[at] += float64(weights[k] * t)
+		}
+	}
+}
+
+// AddDistances adds to dst, laid out as in Distances, the L1 distances of whole
+// rows, whatever the scales.
+func (e *Embedding) AddDistances(dst []float64, i0, i1, j0, j1 int) {
+	e.add(dst, i0, i1, j0, j1, 0, e.Width)
+}
+
+func (e *Embedding) add(dst []float64, i0, i1, j0, j1, first, last int) {
+	for begin := first; begin < last; begin += Strip {
+		end := min(begin+Strip, last)
+		at := 0
+		for i := i0; i < i1; i++ {
+			a := e.Row(i)[begin:end]
+			for j := j0; j < j1; j++ {
+				dst[at] += taxi(a, e.Row(j)[begin:end])
+				at++
+			}
 		}
 	}
 }

@@ -65,21 +65,49 @@ func (f *Flow) Embed(ctx context.Context, samples *graphio.Samples, threads int,
 		Embedding: &Embedding{Scales: []Scale{{Name: "flow", End: width, Weight: 1}}, Width: width, Rows: n, Vectors: make([]float32, n*width)},
 		Slack:     make([]float64, n),
 	}
+	err := f.route(ctx, n, samples.At, e.Row, threads, progress, func(i int, slack float64) { e.Slack[i] = slack })
+	if err != nil {
+		return nil, err
+	}
+	return e, nil
+}
+
+// route routes n samples into rows. took, if not nil, gets what Route says of
+// each.
+func (f *Flow) route(ctx context.Context, n int, sample func(i int) graphio.Sample, row func(i int) []float32, threads int, progress func(done, total int), took func(i int, slack float64)) error {
 	each(ctx, n, resistor.Lanes, threads, progress, func() func(first, count int) {
 		var p resistor.Panel
 		return func(first, count int) {
 			list, rows := make([]graphio.Sample, count), make([][]float32, count)
 			for l := range count {
-				list[l], rows[l] = samples.At(first+l), e.Row(first+l)
+				list[l], rows[l] = sample(first+l), row(first+l)
 			}
 			slack := f.circuit.Route(&p, list, rows)
-			copy(e.Slack[first:first+count], slack[:count])
+			for l := range count {
+				took(first+l, slack[l])
+			}
 		}
 	})
-	if err := ctx.Err(); err != nil {
-		return nil, err
-	}
-	return e, nil
+	return ctx.Err()
+}
+
+// eachRow routes n samples and calls take with the costs of each, valid only
+// during the call.
+func (f *Flow) eachRow(ctx context.Context, n int, sample func(i int) graphio.Sample, threads int, progress func(done, total int), take func(i int, row []float32)) {
+	each(ctx, n, resistor.Lanes, threads, progress, func() func(first, count int) {
+		var p resistor.Panel
+		store := make([]float32, resistor.Lanes*f.Width())
+		return func(first, count int) {
+			list, rows := make([]graphio.Sample, count), make([][]float32, count)
+			for l := range count {
+				list[l], rows[l] = sample(first+l), store[l*f.Width():(l+1)*f.Width()]
+			}
+			f.circuit.Route(&p, list, rows)
+			for l, row := range rows {
+				take(first+l, row)
+			}
+		}
+	})
 }
 
 // Upper is at least the transport distance of samples i and j without
@@ -100,3 +128,5 @@ func (e *FlowEmbedding) Upper(i, j int) float64 {
 	}
 	return bound
 }
+
+func (f *Flow) length(e int) float64 { return f.circuit.Length(e) }

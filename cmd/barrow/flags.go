@@ -3,6 +3,7 @@ package main
 import (
 	"fmt"
 	"math"
+	"path/filepath"
 	"slices"
 	"strconv"
 	"strings"
@@ -26,6 +27,8 @@ type settings struct {
 
 	method, mass, calibrate string
 	unmatched, gap          float64
+	stored, hold            string
+	vectors                 bool
 	timeLimit               time.Duration
 
 	seed    uint64
@@ -41,10 +44,10 @@ type settings struct {
 var unrecorded = []string{"out", "replace", "replay", "help"}
 
 // Flags that may be given beside --replay, and that change no result.
-var harmless = []string{"threads", "memory"}
+var harmless = []string{"threads", "memory", "hold"}
 
 // Flags that name files; what they hold counts, not where it stands.
-var files = []string{"edges", "nodes", "samples", "groups", "rows", "columns"}
+var files = []string{"edges", "nodes", "samples", "groups", "rows", "columns", "calibration"}
 
 func newSettings(command string) *settings {
 	set := &settings{flags: pflag.NewFlagSet(command, pflag.ContinueOnError)}
@@ -140,9 +143,29 @@ func (set *settings) check() error {
 		if _, err := set.calibration(); err != nil {
 			return err
 		}
+		if err := set.checkVectors(); err != nil {
+			return err
+		}
 	}
 	_, err := set.memoryBytes()
 	return err
+}
+
+// checkVectors refuses flags of matrix that contradict each other.
+func (set *settings) checkVectors() error {
+	if err := oneOf("--hold", set.hold, "auto", "memory", "disk"); err != nil {
+		return err
+	}
+	if set.vectors && set.method != "multiscale" {
+		return usageError{fmt.Sprintf("--vectors with --method %s; want multiscale, whose estimates are distances of vectors", set.method)}
+	}
+	if set.stored != "" && set.method != "multiscale" {
+		return usageError{fmt.Sprintf("--calibration with --method %s; want multiscale, which is calibrated", set.method)}
+	}
+	if set.stored != "" && set.flags.Changed("calibrate") && set.calibrate != "auto" {
+		return usageError{"--calibration FILE beside --calibrate N; want the one or the other"}
+	}
+	return nil
 }
 
 func oneOf(flag, value string, accepted ...string) error {
@@ -202,6 +225,13 @@ func (s *session) options(set *settings) (pairwise.Options, error) {
 	if set.flags.Lookup("calibrate") != nil {
 		if opt.Calibrate, err = set.calibration(); err != nil {
 			return opt, err
+		}
+		opt.KeepVectors = set.vectors
+		if set.hold != "auto" {
+			opt.Hold = set.hold
+		}
+		if set.out != "" {
+			opt.Scratch = filepath.Dir(set.out)
 		}
 	}
 	return opt, nil

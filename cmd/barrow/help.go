@@ -83,6 +83,12 @@ Running
                         default, 0 for no limit
 `
 
+const holdHelp = `  --hold auto|memory|disk
+                        where the vectors of the samples are kept: auto puts them
+                        on disk beside --out when they do not fit --memory.
+                        Results do not depend on it
+`
+
 const matrixHelp = `barrow matrix finds the distance between every two samples, and says how wrong the
 distances can be.
 
@@ -90,22 +96,33 @@ Example
   barrow matrix --edges harbour/edges.csv --nodes harbour/nodes.csv --samples harbour/samples.csv --out town
 ` + inputHelp + `
 Method
-  --method multiscale   estimates from how mass diffuses, fast (the default).
-                        Calibrated, they have the unit of your edge lengths
+  --method multiscale   estimates from how mass diffuses and flows, fast (the
+                        default). Calibrated, they have the unit of your edge
+                        lengths
            exact        every pair solved and proved; honours one-way edges
            kernel       maximum mean discrepancy under heat kernels; no unit
            variation    half the sum of differences, blind to where nodes lie
   --calibrate N         solve N random pairs exactly, fit the estimates on half
                         of them and report the error on the rest. auto, the
                         default: up to 200; 0: none, and numbers have no unit
+  --calibration FILE    use the calibration.json of an earlier run on this
+                        network instead: further samples compare as if they had
+                        been there
+  --vectors             write the vector of each sample as well, such that the L1
+                        distance of two is the estimate, for your own index or
+                        classifier. Estimates then leave out the term of the
+                        proofs, which is no L1 distance, and are a little worse
   --seed N              of the choice of those pairs; 1 by default
-` + comparisonHelp + runHelp + replayHelp + `
+` + comparisonHelp + runHelp + holdHelp + replayHelp + `
 Results
   --out DIR             where they go, "results" by default:
                           matrix.csv       square, labelled; from row to column
                           pairs.csv        a,b,distance,lower,upper,method; lower
                                            and upper empty where nothing is proved
                           calibration.csv  the pairs that were solved exactly
+                          calibration.json what --calibration takes
+                          vectors.npy      (--vectors) a row of float32 a sample
+                          vectors.json     (--vectors) names of the rows, unit
                           run.json         what was run, on what, and what it took
                         They appear together at the end, or not at all
   --replace             write over results of another run in DIR. Without it they

@@ -1,6 +1,9 @@
 package main
 
 import (
+	"bytes"
+	"crypto/sha256"
+	"encoding/hex"
 	"fmt"
 	"os"
 
@@ -14,6 +17,7 @@ type data struct {
 	samples  *graphio.Samples
 	inputs   []graphio.InputFile
 	warnings []string
+	model    *pairwise.Model // of --calibration; nil without
 }
 
 // load reads the network and, where given, the samples.
@@ -36,6 +40,11 @@ func (s *session) load(set *settings) (*data, error) {
 			return err
 		}
 		d.add(source)
+		if set.stored != "" {
+			if err := d.readModel(set.stored); err != nil {
+				return err
+			}
+		}
 		return s.ctx.Err()
 	})
 	if err != nil {
@@ -64,6 +73,20 @@ func affordable(set *settings) error {
 	if 2*total > limit {
 		return &pairwise.MemoryError{Limit: limit, Parts: []pairwise.MemoryPart{{Name: "what is in the files", Bytes: 2 * total}}}
 	}
+	return nil
+}
+
+// readModel reads a calibration of an earlier run.
+func (d *data) readModel(path string) error {
+	text, err := os.ReadFile(path)
+	if err == nil {
+		d.model, err = pairwise.ReadModel(bytes.NewReader(text))
+	}
+	if err != nil {
+		return oneFault(path, err.Error(), "the calibration.json of a results folder")
+	}
+	sum := sha256.Sum256(text)
+	d.inputs = append(d.inputs, graphio.InputFile{Path: path, SHA256: hex.EncodeToString(sum[:]), Bytes: int64(len(text))})
 	return nil
 }
 

@@ -29,6 +29,9 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	set.input()
 	set.comparison("multiscale")
 	set.flags.StringVar(&set.calibrate, "calibrate", "auto", "")
+	set.flags.StringVar(&set.stored, "calibration", "", "")
+	set.flags.BoolVar(&set.vectors, "vectors", false, "")
+	set.flags.StringVar(&set.hold, "hold", "auto", "")
 	set.flags.Uint64Var(&set.seed, "seed", 1, "")
 	set.running()
 	set.results("results")
@@ -92,15 +95,17 @@ func (s *session) measure(set *settings, d *data, recorded *record) (*pairwise.R
 	if opt.Memory > 0 {
 		debug.SetMemoryLimit(int64(opt.Memory)) // collect garbage harder as it comes near
 	}
+	opt.Stored = d.model
 	r, err := methods[set.method](s.ctx, d.net, d.samples, opt)
 	if err != nil {
 		return nil, err
 	}
+	defer r.Vectors.Close()
 	s.progress.end()
 	rec.Counts["pairs"] = pairCount(d)
-	rec.Choices = choices{r.Diffusion, recordCalibration(r.Calibration)}
+	rec.Choices = choicesOf(r)
 	s.cautions(rec, d, set, r)
-	err = s.phases.Time("write", func() error { return f.writeMatrices(d, set.method, r) })
+	err = s.phases.Time("write", func() error { return f.writeMatrices(d, set, r) })
 	if err != nil {
 		return nil, err
 	}
@@ -161,17 +166,26 @@ func (s *session) offerExact(d *data, r *pairwise.Result) {
 	}
 }
 
-func (f *folder) writeMatrices(d *data, method string, r *pairwise.Result) error {
+func (f *folder) writeMatrices(d *data, set *settings, r *pairwise.Result) error {
 	err := f.write("matrix.csv", func(w *bufio.Writer) error { return writeMatrix(w, r.Matrix) })
 	if err == nil {
 		err = f.write("pairs.csv", func(w *bufio.Writer) error {
-			return writePairs(w, r.Matrix, method, d.net.Directed())
+			return writePairs(w, r.Matrix, set.method, d.net.Directed())
 		})
 	}
 	if err == nil && r.Calibration != nil {
 		err = f.write("calibration.csv", func(w *bufio.Writer) error {
 			return writeCalibration(w, r.Matrix.Names, r.Calibration)
 		})
+	}
+	if err == nil && r.Calibration != nil {
+		err = f.write("calibration.json", func(w *bufio.Writer) error {
+			_, err := r.Model.WriteTo(w)
+			return err
+		})
+	}
+	if err == nil && r.Vectors != nil {
+		err = f.writeVectors(d, set, r)
 	}
 	return err
 }
@@ -243,11 +257,24 @@ func methodLine(method string, r *pairwise.Result) string {
 		return "variation: half the sum of node-by-node differences, blind to where nodes lie"
 	}
 	c := r.Calibration
+	if c == nil && r.Model != nil {
+		return "multiscale, by a calibration of an earlier run, on " + qualityLine(r.Model.Quality)
+	}
 	if c == nil {
 		return "multiscale without calibration: the numbers are unscaled, they rank pairs but are no lengths"
 	}
-	return fmt.Sprintf("multiscale, calibrated on %s solved exactly\n          on %d of them held out: median error %s, 95 %% within %s, rank correlation (Spearman) %s",
-		several(len(c.Pairs), "pair"), c.HeldOut, percent(c.MedianError), percent(c.P95), human(c.Spearman))
+	return "multiscale, calibrated on " + qualityLine(r.Model.Quality)
+}
+
+func qualityLine(q *pairwise.Quality) string {
+	known := func(x *float64) float64 {
+		if x == nil {
+			return math.NaN()
+		}
+		return *x
+	}
+	return fmt.Sprintf("%s solved exactly\n          on %d of them held out: median error %s, 95 %% within %s, rank correlation (Spearman) %s",
+		several(q.Pairs, "pair"), q.HeldOut, percent(known(q.MedianError)), percent(known(q.P95)), human(known(q.Spearman)))
 }
 
 func unitLine(set *settings, r *pairwise.Result) string {
@@ -258,7 +285,7 @@ func unitLine(set *settings, r *pairwise.Result) string {
 		return "share of the mass that differs, 0 to 1"
 	case set.method == "variation":
 		return "that of your masses"
-	case set.method == "multiscale" && r.Calibration == nil:
+	case set.method == "multiscale" && r.Model == nil:
 		return "none (--calibrate N gives the unit of your edge lengths)"
 	case set.mass == "amount":
 		return "mass times edge length, in the units of your files"

@@ -6,7 +6,6 @@ import (
 	"errors"
 	"fmt"
 	"io/fs"
-	"math"
 	"os"
 	"slices"
 	"strings"
@@ -44,30 +43,40 @@ type recordedFile struct {
 type choices struct {
 	Diffusion   *dual.Description    `json:"diffusion,omitempty"`
 	Calibration *recordedCalibration `json:"calibration,omitempty"`
+	Vectors     *recordedVectors     `json:"vectors,omitempty"`
 }
 
-// recordedCalibration is a pairwise.Calibration without its pairs, which
-// calibration.csv lists; unknown values are left out.
+// recordedVectors says how long the vectors of the samples were, and where they
+// were kept.
+type recordedVectors struct {
+	Width  int    `json:"width"`
+	HeldIn string `json:"held_in"` // memory or disk
+}
+
+// recordedCalibration is what is known of a calibration, but for its pairs,
+// which calibration.csv lists, and what calibration.json has of each edge and
+// node.
 type recordedCalibration struct {
-	Pairs       int       `json:"pairs"`
-	HeldOut     int       `json:"held_out"`
-	Spearman    *float64  `json:"spearman,omitempty"`
-	MedianError *float64  `json:"median_error,omitempty"`
-	P95         *float64  `json:"p95_error,omitempty"`
-	Weights     []float64 `json:"weights"`
+	*pairwise.Quality
+	Terms         []string  `json:"terms"`
+	Weights       []float64 `json:"weights"`
+	Witnesses     int       `json:"witnesses"`
+	WitnessWeight float64   `json:"witness_weight"`
 }
 
-func recordCalibration(c *pairwise.Calibration) *recordedCalibration {
-	if c == nil {
-		return nil
+// choicesOf is what a run decided by itself.
+func choicesOf(r *pairwise.Result) choices {
+	c := choices{Diffusion: r.Diffusion}
+	if m := r.Model; m != nil {
+		c.Calibration = &recordedCalibration{m.Quality, m.Terms, m.Weights, len(m.Witnesses), m.WitnessWeight}
 	}
-	known := func(x float64) *float64 {
-		if math.IsNaN(x) {
-			return nil
+	if r.Width > 0 {
+		c.Vectors = &recordedVectors{r.Width, "memory"}
+		if r.OnDisk {
+			c.Vectors.HeldIn = "disk"
 		}
-		return &x
 	}
-	return &recordedCalibration{len(c.Pairs), c.HeldOut, known(c.Spearman), known(c.MedianError), known(c.P95), c.Weights}
+	return c
 }
 
 // newRecord describes a run whose inputs are loaded.

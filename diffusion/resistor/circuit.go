@@ -100,3 +100,6 @@ func (c *Circuit) Size() int { return len(c.length) }
 
 // Steps is the number of steps a solve makes.
 func (c *Circuit) Steps() int { return c.steps }
+
+// Length is the length of edge e, in the order of Route's values.
+func (c *Circuit) Length(e int) float64 { return c.length[e] }

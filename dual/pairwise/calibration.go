@@ -18,7 +18,7 @@ import (
 // they gave, and how far the estimates were off on pairs the weights had not
 // seen.
 type Calibration struct {
-	Weights []float64 // one a scale, in the unit of the lengths
+	Weights []float64 // one a term of dual.Terms
 	Pairs   []CalibrationPair
 	HeldOut int // pairs the errors are measured on
 
@@ -27,6 +27,8 @@ type Calibration struct {
 	// whose exact value is above 0. NaN where there are fewer than three pairs
 	// (Spearman) or none.
 	Spearman, MedianError, P95 float64
+
+	model *Model
 }
 
 // A CalibrationPair is one pair that was solved exactly.
@@ -36,12 +38,14 @@ type CalibrationPair struct {
 	HeldOut         bool // not used to fit the weights
 }
 
-// DefaultPairs is how many pairs of samples are solved to calibrate: 200, or a
-// quarter of all where those are fewer, and on networks of more than 20,000
-// nodes fewer in proportion, as solving takes longer; but not below 40.
+// DefaultPairs is how many pairs of samples are solved to calibrate: 200, or
+// half of all where those are fewer, and on networks of more than 20,000
+// nodes fewer in proportion, as solving takes longer; but not below 40, and on
+// networks of more than 100,000 nodes not below 12.
 func DefaultPairs(samples, nodes int, directed bool) int {
 	all := pairCount(samples, directed)
-	return min(all, max(40, min(200, all/4, 200*20000/max(nodes, 1))))
+	most := min(200, max(12, 4_000_000/max(nodes, 1)))
+	return min(all, max(min(40, most), min(most, all/2)))
 }
 
 func pairCount(n int, directed bool) int {
@@ -58,27 +62,99 @@ func (opt Options) pairs(samples int, net *graphio.Network) int {
 	return min(opt.Calibrate, pairCount(samples, net.Directed()))
 }
 
-// calibrate solves random pairs, fits the weights on every other one and
-// measures the error on the rest.
-func calibrate(ctx context.Context, net *graphio.Network, compared *graphio.Samples, e *dual.Embedding, count int, opt Options) (*Calibration, error) {
+// calibrate solves random pairs and fits conductances and weights on every
+// other one; the rest is for judge.
+func calibrate(ctx context.Context, net *graphio.Network, compared *graphio.Samples, count int, opt Options) (*Calibration, *dual.Terms, error) {
 	pairs := randomPairs(compared.Len(), net.Directed(), count, opt.Seed)
 	c := &Calibration{Pairs: make([]CalibrationPair, count)}
+	out := heldOut(count, opt.Seed)
+	witness := make([]potentials, count)
 	err := solvePairs(ctx, net, compared, pairs, opt, "calibrate", func(k int, r *exact.Result) {
-		c.Pairs[k] = CalibrationPair{I: pairs[k].i, J: pairs[k].j, Exact: r.Distance()}
+		c.Pairs[k] = CalibrationPair{I: pairs[k].i, J: pairs[k].j, Exact: r.Distance(), HeldOut: out[k]}
+		if !out[k] && !opt.KeepVectors {
+			witness[k] = shortened(r.Potential)
+		}
 	})
+	if err != nil {
+		return nil, nil, err
+	}
+	terms, err := c.fit(ctx, net, compared, witness, opt)
+	return c, terms, err
+}
+
+func shortened(x []float64) potentials {
+	short := make(potentials, len(x))
+	for i, y := range x {
+		short[i] = float32(y)
+	}
+	return short
+}
+
+// fit finds the conductances and the non-negative weights with the least
+// squares of relative errors on the pairs that are not held out. Pairs at
+// distance 0 say nothing about relative errors. witness has the potential of
+// each pair, nil for none.
+func (c *Calibration) fit(ctx context.Context, net *graphio.Network, compared *graphio.Samples, witness []potentials, opt Options) (*dual.Terms, error) {
+	var fitted []dual.Pair
+	var distance []float64
+	var proofs []potentials
+	for k, p := range c.Pairs {
+		if p.HeldOut || p.Exact <= 0 {
+			continue
+		}
+		fitted = append(fitted, dual.Pair{P: compared.At(p.I), Q: compared.At(p.J)})
+		distance = append(distance, p.Exact)
+		if witness[k] != nil {
+			proofs = append(proofs, witness[k])
+		}
+	}
+	m, err := newModel(ctx, net, fitted, opt)
 	if err != nil {
 		return nil, err
 	}
-	for k, out := range heldOut(count, opt.Seed) {
-		c.Pairs[k].HeldOut = out
+	terms, err := m.terms(net)
+	if err != nil {
+		return nil, err
 	}
-	c.Weights = fit(e, c.Pairs)
-	for k := range c.Pairs {
-		p := &c.Pairs[k]
-		p.Estimate = e.Distance(p.I, p.J, c.Weights)
+	rows, err := terms.Of(ctx, fitted, opt.Threads)
+	if err != nil {
+		return nil, err
 	}
-	c.measure()
-	return c, nil
+	count := len(terms.Names())
+	if len(proofs) > 1 {
+		if err := proved(ctx, rows, fitted, proofs, opt); err != nil {
+			return nil, err
+		}
+		count++
+	}
+	weights := weigh(rows, distance, count)
+	m.Terms, m.Weights = terms.Names(), weights[:len(terms.Names())]
+	if count > len(m.Weights) && weights[len(m.Weights)] > 0 {
+		m.Witnesses, m.WitnessWeight = proofs, weights[len(m.Weights)]
+	}
+	c.Weights, c.model = m.Weights, m
+	return terms, nil
+}
+
+// proved appends the term of the witnesses to each row. A pair's own witness,
+// which says what its distance is, is left out: pairs to come have none.
+func proved(ctx context.Context, rows [][]float64, fitted []dual.Pair, proofs []potentials, opt Options) error {
+	sample := func(i int) graphio.Sample {
+		if i%2 == 0 {
+			return fitted[i/2].P
+		}
+		return fitted[i/2].Q
+	}
+	count := len(proofs)
+	all, err := heights(ctx, proofs, 2*len(fitted), sample, opt.threads())
+	if err != nil {
+		return err
+	}
+	for i := range rows {
+		p, q := all[2*i*count:(2*i+1)*count], all[(2*i+1)*count:(2*i+2)*count]
+		rows[i] = append(rows[i], farthest(p, q, i))
+	}
+	return nil
 }
 
 // randomPairs draws distinct pairs, in an order that lets solvers warm up.
@@ -138,43 +214,59 @@ func heldOut(count int, seed uint64) []bool {
 	return out
 }
 
-// fit finds the non-negative weights with the least squares of relative errors
-// on the pairs that are not held out. Pairs at distance 0 say nothing about
-// relative errors.
-func fit(e *dual.Embedding, pairs []CalibrationPair) []float64 {
-	var rows [][]float64
-	for _, p := range pairs {
-		if p.HeldOut || p.Exact <= 0 {
+// weigh finds non-negative weights of the terms for the least Σ (estimate /
+// distance − 1)², plus a little of the squares of the weights, which decides
+// between terms that say the same.
+func weigh(rows [][]float64, distance []float64, terms int) []float64 {
+	weights := make([]float64, terms)
+	if len(rows) == 0 {
+		return weights
+	}
+	n := len(rows)
+	a, b := mat.NewDense(n+terms, terms, nil), make([]float64, n+terms)
+	for k := range terms {
+		size := 0.0
+		for i, row := range rows {
+			size += row[k] / distance[i] / float64(n)
+		}
+		if size == 0 {
 			continue
 		}
-		row := e.Terms(p.I, p.J, nil)
-		for k := range row {
-			row[k] /= p.Exact
+		weights[k] = 1 / size // columns of mean 1
+		for i, row := range rows {
+			a.Set(i, k, row[k]/distance[i]/size)
 		}
-		rows = append(rows, row)
+		a.Set(n+k, k, ridge*math.Sqrt(float64(n)))
 	}
-	theory := e.Theory()
-	if len(rows) == 0 {
-		return make([]float64, len(theory))
+	for i := range rows {
+		b[i] = 1
 	}
-	return fitRows(rows, theory)
+	for k, x := range nonNegative(a, b) {
+		weights[k] *= x
+	}
+	return weights
 }
 
-func fitRows(rows [][]float64, theory []float64) []float64 {
-	scales := len(theory)
-	a := mat.NewDense(len(rows), scales, nil)
-	ones := make([]float64, len(rows))
-	for i, row := range rows {
-		for k := range row {
-			a.Set(i, k, row[k]*theory[k]) // in multiples of the theory: columns of like size
+const ridge = 1e-3
+
+// judge takes the estimates of the pairs from the matrix, so that they have its
+// bits, and measures the error on those held out.
+func (c *Calibration) judge(m *Matrix) {
+	if c == nil {
+		return
+	}
+	for k := range c.Pairs {
+		p := &c.Pairs[k]
+		p.Estimate = m.At(p.I, p.J)
+	}
+	c.measure()
+	known := func(x float64) *float64 {
+		if math.IsNaN(x) {
+			return nil
 		}
-		ones[i] = 1
+		return &x
 	}
-	x := nonNegative(a, ones)
-	for k := range x {
-		x[k] *= theory[k]
-	}
-	return x
+	c.model.Quality = &Quality{Pairs: len(c.Pairs), HeldOut: c.HeldOut, Spearman: known(c.Spearman), MedianError: known(c.MedianError), P95: known(c.P95)}
 }
 
 // measure sets the errors on the held-out pairs.

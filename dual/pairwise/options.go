@@ -22,6 +22,16 @@ type Options struct {
 	// Calibrate is how many random pairs Multiscale solves exactly to find its
 	// weights and its error: 0 none, below 0 as many as DefaultPairs says.
 	Calibrate int
+	// Stored is a calibration of an earlier run, which Multiscale uses instead
+	// of one of its own.
+	Stored *Model
+	// KeepVectors asks for Result.Vectors; close them.
+	KeepVectors bool
+	// Hold says where the vectors of the samples are kept: "memory", "disk", or,
+	// empty, in memory where they fit Memory. The result does not depend on it.
+	Hold string
+	// Scratch is the folder for vectors on disk; empty is the system's.
+	Scratch string
 	// Seed of the choice of those pairs.
 	Seed uint64
 	// Threads is how many goroutines work; 0 is the number of processors. The
@@ -45,6 +55,15 @@ type Result struct {
 	// Calibration is nil where there was none: the distances of Multiscale then
 	// have no unit.
 	Calibration *Calibration
+	// Model is what further samples can be embedded by: that of Calibration, or
+	// the stored one.
+	Model *Model
+	// Width is the length of a sample's vector, 0 where there is none, and
+	// OnDisk whether the vectors did not fit memory.
+	Width  int
+	OnDisk bool
+	// Vectors holds them, if Options.KeepVectors asked for it.
+	Vectors *Vectors
 }
 
 // ErrMethod: a method was asked for what it cannot do.

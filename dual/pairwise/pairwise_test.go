@@ -218,7 +218,7 @@ func TestCancelledWorkReturnsNothing(t *testing.T) {
 
 func TestProgressAndPhases(t *testing.T) {
 	net, samples := town(t, 40)
-	for m, want := range map[int][]string{0: {"exact"}, 1: {"embed", "calibrate", "estimate"}, 2: {"embed", "estimate"}, 3: {"estimate"}} {
+	for m, want := range map[int][]string{0: {"exact"}, 1: {"calibrate", "embed", "estimate"}, 2: {"embed", "estimate"}, 3: {"estimate"}} {
 		var stages []string
 		last := map[string][2]int{}
 		var phases Phases

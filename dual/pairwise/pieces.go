@@ -65,7 +65,7 @@ const tile = 32
 
 // tiles calls compare, on all threads, for squares of pairs that cover those
 // with i < j.
-func tiles(ctx context.Context, opt Options, stage string, n int, compare func(i0, i1, j0, j1 int)) error {
+func tiles(ctx context.Context, threads, n int, progress func(done, total int), compare func(i0, i1, j0, j1 int)) error {
 	type square struct{ i, j int }
 	var list []square
 	for i := 0; i < n; i += tile {
@@ -73,7 +73,7 @@ func tiles(ctx context.Context, opt Options, stage string, n int, compare func(i
 			list = append(list, square{i, j})
 		}
 	}
-	return work(ctx, opt.threads(), len(list), opt.stage(stage), func() func(int) error {
+	return work(ctx, threads, len(list), progress, func() func(int) error {
 		return func(task int) error {
 			s := list[task]
 			compare(s.i, min(n, s.i+tile), s.j, min(n, s.j+tile))

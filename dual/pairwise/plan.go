@@ -93,6 +93,22 @@ func vectorPart(net *graphio.Network, samples, width, threads int) MemoryPart {
 	return MemoryPart{"vectors", 4*uint64(samples)*uint64(width) + uint64(threads)*64*6*uint64(net.Order())}
 }
 
+// termPart is what it takes to make vectors, beside the vectors: layout, factor
+// and room for the panels of all threads. See packages dual and resistor.
+func termPart(net *graphio.Network, threads int) MemoryPart {
+	n, m := uint64(net.Order()), uint64(net.Size())
+	return MemoryPart{"making vectors", 400*n + 150*m + uint64(threads)*(64*6*n+320*n+32*m)}
+}
+
+// room is what is left for vectors beside the parts given.
+func (opt Options) room(parts ...MemoryPart) uint64 {
+	if opt.Memory == 0 {
+		return 1 << 62
+	}
+	e := &MemoryError{opt.Memory, append([]MemoryPart{{"network and samples", inUse()}}, parts...)}
+	return opt.Memory - min(opt.Memory, e.Need())
+}
+
 func (opt Options) threads() int {
 	if opt.Threads > 0 {
 		return opt.Threads

@@ -76,7 +76,7 @@ func Kernel(ctx context.Context, net *graphio.Network, samples *graphio.Samples,
 
 // fill sets every pair of a symmetric matrix.
 func (m *Matrix) fill(ctx context.Context, opt Options, distance func(i, j int) float64) error {
-	return tiles(ctx, opt, "estimate", len(m.Names), func(i0, i1, j0, j1 int) {
+	return tiles(ctx, opt.threads(), len(m.Names), opt.stage("estimate"), func(i0, i1, j0, j1 int) {
 		for i := i0; i < i1; i++ {
 			for j := max(j0, i+1); j < j1; j++ {
 				m.Value[m.Index(i, j)] = distance(i, j)
