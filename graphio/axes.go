@@ -27,7 +27,7 @@ type axisFile struct {
 // size is allocated.
 func (r *sampleReader) readAxes(path string, rows, columns int64) (*axes, error) {
 	if r.opt.RowNames == "" || r.opt.ColumnNames == "" {
-		return nil, oneFault(Fault{File: path, Found: "a matrix without names", Want: "a file that names its rows and one that names its columns (--row-names FILE --column-names FILE): a name a line, or a table with a column node or sample"})
+		return nil, oneFault(Fault{File: path, Found: "a matrix without names", Want: "a file that names its rows and one that names its columns (--rows FILE --columns FILE): a name a line, or a table with a column node or sample"})
 	}
 	down, err := r.readAxis(r.opt.RowNames, "rows", rows)
 	if err != nil {

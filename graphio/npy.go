@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"strings"
 
 	"codeberg.org/sbinet/npyio/npy"
 )
@@ -31,9 +32,10 @@ func (r *sampleReader) readNPY(in *input) ([]Sample, error) {
 	if len(shape) != 2 || shape[0] < 0 || shape[1] < 0 {
 		return fail(fmt.Sprintf("an array of shape %v", shape), "two dimensions, nodes × samples or samples × nodes")
 	}
-	size, decode := npyDecoder(file.Header.Descr.Type)
+	kind := strings.Trim(file.Header.Descr.Type, `'"`)
+	size, decode := npyDecoder(kind)
 	if decode == nil {
-		return fail(fmt.Sprintf("values of type %q", file.Header.Descr.Type), "floats (f4, f8) or whole numbers (i1 to i8, u1 to u8)")
+		return fail(fmt.Sprintf("values of type %q", kind), "floats (f4, f8) or whole numbers (i1 to i8, u1 to u8)")
 	}
 	a, err := r.readAxes(in.path, int64(shape[0]), int64(shape[1]))
 	if err != nil {
