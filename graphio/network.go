@@ -50,8 +50,8 @@ type adjacency struct {
 }
 
 // NewNetwork makes a network of the named nodes and the edges between them.
-// It takes both slices over. Errors: Faults for names that are empty or stand
-// twice, edges to no node, self-loops, duplicates, and lengths or weights that
+// It takes both slices over. Errors: Faults for names that are empty, too long,
+// not UTF-8 or stand twice, edges to no node, self-loops, duplicates, and lengths or weights that
 // are not positive and finite. Cost: O(nodes + edges).
 func NewNetwork(names []string, edges []Edge) (*Network, error) {
 	if len(names) > math.MaxInt32 || len(edges) > math.MaxInt32 {
@@ -59,8 +59,8 @@ func NewNetwork(names []string, edges []Edge) (*Network, error) {
 	}
 	var faults FaultList
 	for v, name := range names {
-		if name == "" {
-			faults.Add(Fault{Found: fmt.Sprintf("no name for node number %d", v+1), Want: "a name for each node"})
+		if found, want := nameFault([]byte(name), "node"); found != "" {
+			faults.Add(Fault{Found: fmt.Sprintf("node number %d: %s", v+1, found), Want: want})
 		}
 	}
 	n := &Network{edges: edges}
