@@ -90,7 +90,20 @@ func paths(net *graphio.Network, lone int32) (roots []int32, via []int32, reach 
 		}
 		return roots, via, reach
 	}
-	middle(net, label, roots)
+	sweep(shortest.Either)
+	far := append([]int32(nil), roots...)
+	for v, d := range dist {
+		if d > dist[far[label[v]]] {
+			far[label[v]] = int32(v)
+		}
+	}
+	for c, v := range far { // half way back from the farthest node
+		half := dist[v] / 2
+		for dist[v] > half {
+			v = across(net, via[v], v)
+		}
+		roots[c] = v
+	}
 	sweep(shortest.Either)
 	for _, d := range dist {
 		reach = max(reach, d)
@@ -105,60 +118,6 @@ func paths(net *graphio.Network, lone int32) (roots []int32, via []int32, reach 
 		}
 	}
 	return roots, via, reach
-}
-
-// middle moves the root of every component to a node about its middle: half way,
-// by number of edges, from a node as far as any from the root to one as far as
-// any from that, and of all such nodes the one in the middle of the sweep.
-func middle(net *graphio.Network, label, roots []int32) {
-	depth := make([]int32, net.Order())
-	order := sweepEdges(net, roots, depth)
-	far := append([]int32(nil), roots...)
-	for _, v := range order {
-		far[label[v]] = v
-	}
-	order = sweepEdges(net, far, depth)
-	for _, v := range order {
-		far[label[v]] = v
-	}
-	first := make([]int32, len(roots))
-	count := make([]int32, len(roots))
-	half := func(v int32) bool { return depth[v] == depth[far[label[v]]]/2 }
-	for _, v := range order {
-		if half(v) {
-			count[label[v]]++
-		}
-	}
-	for _, v := range order {
-		if c := label[v]; half(v) {
-			if first[c] == count[c]/2 {
-				roots[c] = v
-			}
-			first[c]++
-		}
-	}
-}
-
-// sweepEdges lists the nodes by the number of edges from the starts, which it
-// puts in depth.
-func sweepEdges(net *graphio.Network, starts, depth []int32) []int32 {
-	for v := range depth {
-		depth[v] = -1
-	}
-	order := append(make([]int32, 0, len(depth)), starts...)
-	for _, v := range starts {
-		depth[v] = 0
-	}
-	for i := 0; i < len(order); i++ {
-		v := order[i]
-		for _, a := range net.Arcs(int(v)) {
-			if depth[a.Node] < 0 {
-				depth[a.Node] = depth[v] + 1
-				order = append(order, a.Node)
-			}
-		}
-	}
-	return order
 }
 
 func across(net *graphio.Network, i, v int32) int32 {
