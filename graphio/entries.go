@@ -108,6 +108,7 @@ type sampleReader struct {
 	source *Source
 	faults FaultList
 	spell  speller
+	next   int32 // the node that a row is likely to be of
 	entries
 }
 
@@ -151,11 +152,22 @@ func (r *sampleReader) field(t *table, column int) (float64, bool) {
 	return 0, false
 }
 
-// nodeAt finds the node of a field.
+// nodeAt finds the node of a field. Rows mostly follow the network's own order,
+// so the nodes after the last are tried before the table of names, which costs
+// a miss of the cache or two.
 func (r *sampleReader) nodeAt(t *table, column int) (int32, bool) {
 	name := t.fields[column]
+	names := r.net.names.names
+	const ahead = 4
+	for v := r.next; v < min(r.next+ahead, int32(len(names))); v++ {
+		if names[v] == string(name) {
+			r.next = v + 1
+			return v, true
+		}
+	}
 	v, _ := r.net.names.find(name)
 	if v >= 0 {
+		r.next = v + 1
 		return v, true
 	}
 	found, want := nameFault(name, "node")
