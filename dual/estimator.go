@@ -154,3 +154,16 @@ func (e *Estimator) embedScales(ctx context.Context, samples *graphio.Samples, r
 		})
 	})
 }
+
+// Moved is how many bytes Embed reads and writes for one sample, whether a cache
+// has them or not. It is what a measurement of the speed is compared with.
+func (e *Estimator) Moved() int64 {
+	sum := int64(4 * e.Width())
+	if len(e.scales) > 0 {
+		sum += e.terms.scales.cascade.Moved()
+	}
+	for _, f := range e.flows {
+		sum += f.flow.circuit.Moved()
+	}
+	return sum
+}

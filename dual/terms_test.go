@@ -148,7 +148,7 @@ func TestReweight(t *testing.T) {
 // have the bits of the plain form.
 func TestTaxi(t *testing.T) {
 	rng := rand.New(rand.NewPCG(5, 6))
-	for _, n := range []int{0, 1, 31, 32, 33, 100, 1024, 1025, 5000} {
+	for _, n := range []int{0, 1, 63, 64, 65, 200, 2048, 2049, 10000} {
 		a, b := make([]float32, n), make([]float32, n)
 		for i := range a {
 			a[i], b[i] = float32(rng.NormFloat64()), float32(rng.NormFloat64())
@@ -158,8 +158,8 @@ func TestTaxi(t *testing.T) {
 			t.Errorf("length %d: %g one way, %g the other, %g by manhattan", n, got, taxi(b, a), want)
 		}
 		var fast, plain [8]float64
-		taxiBlocks(&fast, a[:n&^31], b[:n&^31])
-		taxiPlain(&plain, a[:n&^31], b[:n&^31])
+		taxiBlocks(&fast, a[:n&^63], b[:n&^63])
+		taxiPlain(&plain, a[:n&^63], b[:n&^63])
 		if fast != plain {
 			t.Errorf("length %d: %v in assembly, %v plain", n, fast, plain)
 		}

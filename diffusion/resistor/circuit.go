@@ -1,8 +1,10 @@
 package resistor
 
 import (
+	"cmp"
 	"fmt"
 	"math"
+	"slices"
 
 	"example.org/barrow/graphio"
 )
@@ -24,16 +26,24 @@ type Options struct {
 // entry, some five entries a node on road networks.
 type Circuit struct {
 	order       int // nodes of the network, without the extra one
-	from, to    []int32
 	length      []float64
 	conductance []float64
 	extra       bool
 
 	factor    *factor
+	inner     *factor // of the core
 	laplacian *laplacian
 	tree      *tree
+	beside    []link // edges beside the tree, in the order of places
+	along     []link // edges of the tree, from each node to its parent, leaves first
 	low, high float64
 	steps     int
+}
+
+// link is an edge as Route goes along it.
+type link struct {
+	edge, from, to int32   // from and to are places
+	scale, back    float64 // from potential or flow to cost, and from cost to flow
 }
 
 // New makes the circuit of a network, directions left aside. Errors:
@@ -47,8 +57,9 @@ func New(net *graphio.Network, opt Options) (*Circuit, error) {
 			return nil, err
 		}
 	}
+	var from, to []int32
 	for _, e := range net.EdgeList() {
-		c.from, c.to, c.length = append(c.from, e.From), append(c.to, e.To), append(c.length, e.Length)
+		from, to, c.length = append(from, e.From), append(to, e.To), append(c.length, e.Length)
 	}
 	c.conductance = opt.Conductance
 	if c.conductance == nil {
@@ -65,15 +76,41 @@ func New(net *graphio.Network, opt Options) (*Circuit, error) {
 			return nil, fmt.Errorf("resistor: conductance %v of edge number %d; want a finite number above 0", x, i+1)
 		}
 	}
-	c.factor = eliminate(net.Order(), c.from, c.to, c.conductance)
-	c.laplacian = newLaplacian(c.factor.place, c.from, c.to, c.conductance)
+	c.factor = eliminate(net.Order(), from, to, c.conductance)
+	c.inner, c.laplacian = c.factor.inner(), newLaplacian(c.factor)
 	root := none
 	if c.extra {
 		root = int32(c.order)
 	}
 	c.tree = newTree(net, root)
+	c.layLinks(from, to)
 	c.measure()
 	return c, nil
+}
+
+// layLinks puts the edges in the order in which Route goes along them.
+func (c *Circuit) layLinks(from, to []int32) {
+	place := c.factor.place
+	for e, in := range c.tree.inTree {
+		if !in {
+			c.beside = append(c.beside, link{int32(e), place[from[e]], place[to[e]], c.length[e] * c.conductance[e], 1 / c.length[e]})
+		}
+	}
+	slices.SortFunc(c.beside, func(a, b link) int {
+		return cmp.Or(cmp.Compare(min(a.from, a.to), min(b.from, b.to)), cmp.Compare(a.edge, b.edge))
+	})
+	for i := len(c.tree.order) - 1; i >= 0; i-- {
+		v := c.tree.order[i]
+		e := c.tree.via[v]
+		if e == none {
+			continue
+		}
+		scale := c.length[e]
+		if from[e] != v {
+			scale = -scale
+		}
+		c.along = append(c.along, link{edge: e, from: place[v], to: place[c.tree.parent[v]], scale: scale})
+	}
 }
 
 // withExtra is the network with one node more, joined to all by edges of the

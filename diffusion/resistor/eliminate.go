@@ -19,19 +19,30 @@ type factor struct {
 	row     []int32 // places
 	value   []float64
 	inverse []float64
-	exact   bool // no clique was sampled
+	// Up to place cut elimination is exact; what is left then is the core, a
+	// network of its own, whose elimination is sampled. cut is the number of
+	// nodes where all are eliminated exactly.
+	cut  int
+	core edges // by places from the cut on
 }
+
+// edges lists edges by their ends, nodes or places.
+type edges struct {
+	from, to []int32
+	weight   []float64
+}
+
+func (f *factor) exact() bool { return f.cut == len(f.order) }
 
 const (
 	// whole is the number of neighbours up to which elimination is exact where
 	// it cannot be exact throughout.
 	whole = 24
-	// effort is how many new edges a node or edge of the network may cost on
-	// average in an exact elimination, and densest how many nodes may be left
-	// then, to be eliminated as a full matrix. Road networks of a hundred
-	// thousand nodes stay within; past it, a solve takes ten to twenty steps
-	// instead of one.
-	effort  = 150
+	// effort is how many new edges an exact elimination may make, beside some
+	// for each node and edge, and densest how many nodes may be left then, to
+	// be eliminated as a full matrix. Road networks of a hundred thousand nodes
+	// stay within; past it, a solve takes ten to twenty steps on the core.
+	effort  = 40_000_000
 	densest = 2048
 )
 
@@ -71,14 +82,14 @@ func eliminate(n int, from, to []int32, weight []float64) *factor {
 func eliminateUpTo(whole, n int, from, to []int32, weight []float64) *factor {
 	e := &eliminator{half: make([][]half, n), kept: make([]int, n), live: make([]int, n), gone: make([]bool, n), queue: newQueue(n), at: make([]int32, n), whole: whole}
 	e.rng = rand.New(rand.NewPCG(7, 8)) // fixed: the factor is part of the method
-	e.f = &factor{order: make([]int32, 0, n), place: make([]int32, n), start: make([]int, 1, n+1), exact: true}
+	e.f = &factor{order: make([]int32, 0, n), place: make([]int32, n), start: make([]int, 1, n+1)}
 	e.link(from, to, weight)
 	for v := n - 1; v >= 0; v-- {
 		e.queue.set(int32(v), len(e.half[v]))
 	}
 	for v := e.queue.next(); v != none; v = e.queue.next() {
 		e.remove(v)
-		if whole == n && e.spent > effort*(n+len(from)) {
+		if whole == n && e.spent > effort+20*(n+len(from)) {
 			if left := n - len(e.f.order); left > densest {
 				return nil
 			}
@@ -86,9 +97,18 @@ func eliminateUpTo(whole, n int, from, to []int32, weight []float64) *factor {
 			break
 		}
 	}
+	if e.f.cut == 0 {
+		e.f.cut = n
+	}
 	for k, v := range e.f.row {
 		e.f.row[k] = e.f.place[v]
 	}
+	for _, ends := range [][]int32{e.f.core.from, e.f.core.to} {
+		for k, v := range ends {
+			ends[k] = e.f.place[v] - int32(e.f.cut)
+		}
+	}
+	e.f.postorder()
 	return e.f
 }
 
@@ -157,7 +177,9 @@ func (e *eliminator) remove(v int32) {
 		e.spent += len(list) * len(list) / 2
 		e.clique(list, sum)
 	} else {
-		f.exact = false
+		if f.cut == 0 {
+			e.keepCore(v, list)
+		}
 		e.sample(list, sum)
 	}
 	for _, h := range list {
@@ -174,6 +196,29 @@ func (e *eliminator) join(u, v int32, w float64) {
 	e.half[u], e.half[v] = append(e.half[u], half{v, w}), append(e.half[v], half{u, w})
 	e.live[u]++
 	e.live[v]++
+}
+
+// keepCore takes down what is left when v, the first node to be sampled, is
+// about to go.
+func (e *eliminator) keepCore(v int32, list []half) {
+	f := e.f
+	f.cut = len(f.order) - 1
+	add := func(u int32, h half) {
+		f.core.from, f.core.to, f.core.weight = append(f.core.from, u), append(f.core.to, h.to), append(f.core.weight, h.weight)
+	}
+	for _, h := range list {
+		add(v, h)
+	}
+	for u := range e.half {
+		if e.gone[u] {
+			continue
+		}
+		for _, h := range e.half[u] {
+			if int(h.to) > u && !e.gone[h.to] {
+				add(int32(u), h)
+			}
+		}
+	}
 }
 
 // clique joins all neighbours: between i and j goes weight_i weight_j/Σweight.
@@ -242,34 +287,15 @@ func (e *eliminator) dense() {
 	}
 }
 
-// lanes is how many samples are solved at once: eight float64 fill a cache line.
-const lanes = 8
-
-type row = [lanes]float64
-
-// apply overwrites b, one row a place, with the factor's solution. The last
-// place of each component comes out as 0 before it is spread back.
-func (f *factor) apply(b []row) {
-	for i := range b {
-		y := &b[i]
-		for k := f.start[i]; k < f.start[i+1]; k++ {
-			l, z := f.value[k], &b[f.row[k]]
-			for c := range z {
-				z[c] += float64(l * y[c])
-			}
-		}
-		for c := range y {
-			y[c] *= f.inverse[i]
-		}
+// inner is the factor of the core by itself.
+func (f *factor) inner() *factor {
+	n, from := len(f.order)-f.cut, f.start[f.cut]
+	in := &factor{start: make([]int, n+1), row: make([]int32, len(f.row)-from), value: f.value[from:], inverse: f.inverse[f.cut:]}
+	for i := range in.start {
+		in.start[i] = f.start[f.cut+i] - from
 	}
-	for i := len(b) - 1; i >= 0; i-- {
-		x := b[i]
-		for k := f.start[i]; k < f.start[i+1]; k++ {
-			l, z := f.value[k], &b[f.row[k]]
-			for c := range x {
-				x[c] += float64(l * z[c])
-			}
-		}
-		b[i] = x
+	for k, i := range f.row[from:] {
+		in.row[k] = i - int32(f.cut)
 	}
+	return in
 }

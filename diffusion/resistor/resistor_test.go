@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"slices"
 	"testing"
 
 	"gonum.org/v1/gonum/mat"
@@ -115,21 +116,41 @@ func TestSolve(t *testing.T) {
 	sampled := 0
 	for name, net := range larger() {
 		c := circuit(t, net, Options{})
-		if !c.factor.exact {
+		if !c.factor.exact() {
 			sampled++
 		}
 		var p Panel
 		p.fit(c)
-		c.random(&p)
-		b := append([]row(nil), p.r...)
+		rng := rand.New(rand.NewPCG(1, 1))
+		b, mean := make([]row, net.Order()), row{}
+		for i := range b {
+			for l := range b[i] {
+				b[i][l] = rng.NormFloat64()
+				mean[l] += b[i][l] / float64(len(b))
+			}
+		}
+		for i := range b {
+			for l := range b[i] {
+				b[i][l] -= mean[l]
+			}
+		}
+		copy(p.x, b)
 		c.solve(&p)
 		var left, all float64
-		c.laplacian.times(p.x, func(i int, y *row) {
-			for l := range y {
-				left += (b[i][l] - y[l]) * (b[i][l] - y[l])
-				all += b[i][l] * b[i][l]
+		for i, e := range net.EdgeList() {
+			from, to := c.factor.place[e.From], c.factor.place[e.To]
+			for l := range mean {
+				current := c.conductance[i] * (p.x[from][l] - p.x[to][l])
+				b[from][l] -= current
+				b[to][l] += current
 			}
-		})
+		}
+		for i := range b {
+			for _, r := range b[i] {
+				left += r * r
+				all++
+			}
+		}
 		if ratio := math.Sqrt(left / all); ratio > 1e-5 {
 			t.Errorf("%s: residual of %.2g after %d steps", name, ratio, c.steps)
 		}
@@ -235,5 +256,40 @@ func TestErrors(t *testing.T) {
 		if _, err := New(net, Options{Conductance: bad}); err == nil {
 			t.Errorf("conductances %v are taken", bad)
 		}
+	}
+}
+
+// The assembly has the bits of the plain forms.
+func TestRowsPlain(t *testing.T) {
+	c := circuit(t, graphiotest.KNN(4000, 8, 10, 1), Options{})
+	if c.factor.exact() {
+		t.Fatal("no core to try the product on")
+	}
+	rng := rand.New(rand.NewPCG(1, 3))
+	fill := func(n int) []row {
+		b := make([]row, n)
+		for i := range b {
+			for l := range b[i] {
+				b[i][l] = rng.NormFloat64()
+			}
+		}
+		return b
+	}
+	n, core := len(c.factor.order), len(c.laplacian.diagonal)
+	fast, plain := fill(n), make([]row, n)
+	copy(plain, fast)
+	c.factor.forward(fast, 3, n)
+	c.factor.forwardPlain(plain, 3, n)
+	c.factor.backward(fast, 3, n)
+	c.factor.backwardPlain(plain, 3, n)
+	if !slices.Equal(fast, plain) {
+		t.Error("factors differ")
+	}
+	x := fill(core)
+	a, b := make([]row, core), make([]row, core)
+	c.laplacian.product(a, x, 5, core)
+	c.laplacian.productPlain(b, x, 5, core)
+	if !slices.Equal(a, b) {
+		t.Error("products differ")
 	}
 }

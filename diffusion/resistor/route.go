@@ -12,15 +12,26 @@ const Lanes = lanes
 // A Panel is the memory one goroutine needs to route samples. The zero value is
 // ready to use; it grows with the first samples.
 //
-// Memory: 320 bytes a node.
+// Memory: 128 bytes a node, 192 a node of the core and 32 an edge.
 type Panel struct {
-	r, z, d, x []row // by place
-	left       []row // by node: mass still to be carried off
+	x       []row // by place
+	r, z, d []row // of the core
+	left    []row // by place: mass still to be carried off
+	cost    []costs
 }
 
+// costs are those of an edge in all lanes.
+type costs = [lanes]float32
+
 func (p *Panel) fit(c *Circuit) {
-	if n := len(c.factor.order); len(p.r) != n {
-		p.r, p.z, p.d, p.x, p.left = make([]row, n), make([]row, n), make([]row, n), make([]row, n), make([]row, n)
+	if n := len(c.factor.order); len(p.x) != n {
+		p.x, p.left = make([]row, n), make([]row, n)
+	}
+	if n := len(c.factor.order) - c.factor.cut; len(p.r) != n {
+		p.r, p.z, p.d = make([]row, n), make([]row, n), make([]row, n)
+	}
+	if n := len(c.length); len(p.cost) != n {
+		p.cost = make([]costs, n)
 	}
 }
 
@@ -40,55 +51,59 @@ func (p *Panel) fit(c *Circuit) {
 // Cost: O((nodes + edges) Lanes) for each of Steps steps.
 func (c *Circuit) Route(p *Panel, samples []graphio.Sample, dst [][]float32) (slack [Lanes]float64) {
 	total := c.load(p, samples)
-	for i, v := range c.factor.order {
-		p.r[i] = p.left[v]
-	}
+	copy(p.x, p.left)
 	c.solve(p)
 	var moved row // Σ|flow|
-	for e, u := range c.from {
-		if c.tree.inTree[e] {
-			continue
-		}
-		v := c.to[e]
-		x, y := &p.x[c.factor.place[u]], &p.x[c.factor.place[v]]
-		a, b := &p.left[u], &p.left[v]
-		for l := range dst {
-			cost := float32(c.length[e] * c.conductance[e] * (x[l] - y[l]))
-			dst[l][e] = cost
-			flow := float64(cost) / c.length[e]
-			a[l] -= flow
-			b[l] += flow
-			moved[l] += math.Abs(flow)
-		}
-	}
-	for i := len(c.tree.order) - 1; i >= 0; i-- {
-		v := c.tree.order[i]
-		e := c.tree.via[v]
-		if e == none {
-			continue
-		}
-		a, b, sign := &p.left[v], &p.left[c.tree.parent[v]], 1.0
-		if c.from[e] != v {
-			sign = -1
-		}
-		for l := range dst {
-			flow := a[l]
-			b[l] += flow
-			cost := sign * c.length[e] * flow
-			dst[l][e] = float32(cost)
-			slack[l] += math.Abs(float64(dst[l][e]) - cost)
-			moved[l] += math.Abs(flow)
+	c.crossing(p, &moved)
+	c.alongTree(p, &moved, (*row)(&slack))
+	for l, to := range dst {
+		for e := range to {
+			to[e] = p.cost[e][l]
 		}
 	}
 	// Rounding of the sums, in float64: each of the terms 2 moved + 2 total is
-	// rounded in adds + 4 operations at most, and what that makes of it goes
+	// rounded in adds + 5 operations at most, and what that makes of it goes
 	// up to height far.
-	unit := 0x1p-53 * (c.tree.adds + 4) * c.tree.height
+	unit := 0x1p-53 * (c.tree.adds + 5) * c.tree.height
 	for l := range dst {
 		slack[l] += 2 * unit * (moved[l] + total[l])
 		slack[l] *= 1 + 1e-9 // of adding up the slack itself
 	}
 	return slack
+}
+
+// crossing sets the costs of the edges beside the tree to those of the current,
+// rounded, and takes what they carry off the nodes.
+func (c *Circuit) crossing(p *Panel, moved *row) {
+	for i := range c.beside {
+		e := &c.beside[i]
+		x, y := &p.x[e.from], &p.x[e.to]
+		a, b, to := &p.left[e.from], &p.left[e.to], &p.cost[e.edge]
+		for l := range to {
+			cost := float32(e.scale * (x[l] - y[l]))
+			to[l] = cost
+			flow := e.back * float64(cost)
+			a[l] -= flow
+			b[l] += flow
+			moved[l] += math.Abs(flow)
+		}
+	}
+}
+
+// alongTree carries what is left to the roots.
+func (c *Circuit) alongTree(p *Panel, moved, slack *row) {
+	for i := range c.along {
+		e := &c.along[i]
+		a, b, to := &p.left[e.from], &p.left[e.to], &p.cost[e.edge]
+		for l := range to {
+			flow := a[l]
+			b[l] += flow
+			cost := e.scale * flow
+			to[l] = float32(cost)
+			slack[l] += math.Abs(float64(to[l]) - cost)
+			moved[l] += math.Abs(flow)
+		}
+	}
 }
 
 // load sets p.left to the samples less where they come to rest, and the lanes
@@ -99,7 +114,7 @@ func (c *Circuit) load(p *Panel, samples []graphio.Sample) (total row) {
 	for l, s := range samples {
 		rest := make([]float64, len(c.tree.roots))
 		for k, v := range s.Nodes {
-			p.left[v][l] += s.Values[k]
+			p.left[c.factor.place[v]][l] += s.Values[k]
 			rest[c.tree.label[v]] += s.Values[k]
 		}
 		for part, x := range rest {
@@ -107,11 +122,11 @@ func (c *Circuit) load(p *Panel, samples []graphio.Sample) (total row) {
 			rest[part] /= c.tree.size[part]
 		}
 		if c.extra {
-			p.left[c.order][l] -= total[l]
+			p.left[c.factor.place[c.order]][l] -= total[l]
 			continue
 		}
-		for v, part := range c.tree.label {
-			p.left[v][l] -= rest[part]
+		for i, v := range c.factor.order {
+			p.left[i][l] -= rest[c.tree.label[v]]
 		}
 	}
 	return total

@@ -7,8 +7,8 @@ import (
 	"gonum.org/v1/gonum/mat"
 )
 
-// laplacian is L in compressed rows, nodes numbered by their place in the
-// factor: off-diagonal entries are -value.
+// laplacian is that of the core in compressed rows, numbered from the cut on;
+// off-diagonal entries are -value.
 type laplacian struct {
 	start    []int
 	col      []int32
@@ -16,12 +16,12 @@ type laplacian struct {
 	diagonal []float64
 }
 
-func newLaplacian(place, from, to []int32, conductance []float64) *laplacian {
-	n := len(place)
+func newLaplacian(f *factor) *laplacian {
+	n, e := len(f.order)-f.cut, &f.core
 	l := &laplacian{start: make([]int, n+1), diagonal: make([]float64, n)}
-	for k, u := range from {
-		l.start[place[u]+1]++
-		l.start[place[to[k]]+1]++
+	for k, u := range e.from {
+		l.start[u+1]++
+		l.start[e.to[k]+1]++
 	}
 	for i := range n {
 		l.start[i+1] += l.start[i]
@@ -33,34 +33,15 @@ func newLaplacian(place, from, to []int32, conductance []float64) *laplacian {
 		next[i]++
 		l.diagonal[i] += c
 	}
-	for k, u := range from {
-		i, j := place[u], place[to[k]]
-		put(i, j, conductance[k])
-		put(j, i, conductance[k])
+	for k, u := range e.from {
+		put(u, e.to[k], e.weight[k])
+		put(e.to[k], u, e.weight[k])
 	}
 	return l
 }
 
-// times calls do with every row of L x, in order.
-func (l *laplacian) times(x []row, do func(i int, y *row)) {
-	var y row
-	for i := range x {
-		own, d := &x[i], l.diagonal[i]
-		for c := range y {
-			y[c] = d * own[c]
-		}
-		for k := l.start[i]; k < l.start[i+1]; k++ {
-			v, z := l.value[k], &x[l.col[k]]
-			for c := range y {
-				y[c] -= float64(v * z[c])
-			}
-		}
-		do(i, &y)
-	}
-}
-
 const (
-	aim       = 1e-7 // of the error left, relative, in the norm of the energy
+	aim       = 1e-5 // of the error left, relative, in the norm of the energy
 	mostSteps = 200
 )
 
@@ -76,15 +57,26 @@ func (c *Circuit) plan(low, high float64) {
 	}
 }
 
-// solve overwrites the residual p.r, which sums to 0 on every component, and
-// leaves in p.x about L⁺ of it: Chebyshev's iteration (Saad 2003, algorithm
-// 12.1, preconditioned). Every lane takes the same steps: the map is linear.
+// solve overwrites p.x, which sums to 0 on every component, with about L⁺ of it.
+// The nodes before the cut are eliminated; on the core Chebyshev's iteration
+// (Saad 2003, algorithm 12.1, preconditioned) is run. Every lane takes the same
+// steps: the map is linear.
 func (c *Circuit) solve(p *Panel) {
+	c.factor.forward(p.x, 0, c.factor.cut)
+	if !c.factor.exact() {
+		copy(p.r, p.x[c.factor.cut:])
+		c.iterate(p, p.x[c.factor.cut:])
+	}
+	c.factor.backward(p.x, 0, c.factor.cut)
+}
+
+// iterate solves the core for p.r, which it overwrites, into x.
+func (c *Circuit) iterate(p *Panel, x []row) {
 	theta, delta := (c.high+c.low)/2, (c.high-c.low)/2
 	copy(p.z, p.r)
-	c.factor.apply(p.z)
+	c.inner.apply(p.z)
 	for i := range p.d {
-		d, z, x := &p.d[i], &p.z[i], &p.x[i]
+		d, z, x := &p.d[i], &p.z[i], &x[i]
 		for l := range d {
 			d[l] = z[l] / theta
 			x[l] = d[l]
@@ -99,12 +91,12 @@ func (c *Circuit) solve(p *Panel) {
 				z[l] = r[l]
 			}
 		})
-		c.factor.apply(p.z)
+		c.inner.apply(p.z)
 		next := 1 / (2*theta/delta - rho)
 		keep, move := next*rho, 2*next/delta
 		rho = next
 		for i := range p.d {
-			d, z, x := &p.d[i], &p.z[i], &p.x[i]
+			d, z, x := &p.d[i], &p.z[i], &x[i]
 			for l := range d {
 				d[l] = float64(keep*d[l]) + float64(move*z[l])
 				x[l] += d[l]
@@ -118,24 +110,25 @@ func (c *Circuit) solve(p *Panel) {
 // little widened, and a trial says whether they hold.
 func (c *Circuit) measure() {
 	c.plan(1, 1)
-	if c.factor.exact {
+	if c.factor.exact() {
 		return
 	}
 	var p Panel
 	p.fit(c)
+	x := make([]row, len(p.r))
 	low, high := c.extremes(&p)
 	for low, high = low/1.1, high*1.05; ; high *= 1.3 {
 		c.plan(low, high)
 		c.random(&p)
 		before := c.energy(&p)
-		c.solve(&p)
+		c.iterate(&p, x)
 		// p.r lacks the last step; renew what is left from there
 		c.laplacian.times(p.d, func(i int, y *row) {
 			for l := range y {
 				p.r[i][l] -= y[l]
 			}
 		})
-		if c.energy(&p) < 1e-4*before || c.steps == mostSteps {
+		if c.energy(&p) < 100*aim*before || c.steps == mostSteps {
 			return
 		}
 	}
@@ -144,7 +137,7 @@ func (c *Circuit) measure() {
 // energy is Σ over lanes of the root of r·M r, M being the factor's solution.
 func (c *Circuit) energy(p *Panel) float64 {
 	copy(p.z, p.r)
-	c.factor.apply(p.z)
+	c.inner.apply(p.z)
 	sum, all := dots(p.r, p.z), 0.0
 	for _, x := range sum {
 		all += math.Sqrt(max(x, 0))
@@ -155,18 +148,20 @@ func (c *Circuit) energy(p *Panel) float64 {
 // random fills p.r with signs, less their mean on every component.
 func (c *Circuit) random(p *Panel) {
 	rng := rand.New(rand.NewPCG(9, 10))
-	mean := make([]row, len(c.tree.roots))
-	for v, part := range c.tree.label {
-		r := &p.r[c.factor.place[v]]
-		for l := range r {
-			r[l] = float64(1 - 2*int(rng.Uint64()&1))
-			mean[part][l] += r[l] / c.tree.size[part]
+	nodes := c.factor.order[c.factor.cut:]
+	sum, size := make([]row, len(c.tree.roots)), make([]float64, len(c.tree.roots))
+	for i, v := range nodes {
+		part := c.tree.label[v]
+		size[part]++
+		for l := range sum[part] {
+			p.r[i][l] = float64(1 - 2*int(rng.Uint64()&1))
+			sum[part][l] += p.r[i][l]
 		}
 	}
-	for v, part := range c.tree.label {
-		r := &p.r[c.factor.place[v]]
-		for l := range r {
-			r[l] -= mean[part][l]
+	for i, v := range nodes {
+		part := c.tree.label[v]
+		for l := range sum[part] {
+			p.r[i][l] -= sum[part][l] / size[part]
 		}
 	}
 }
@@ -187,7 +182,7 @@ const lanczosSteps = 16
 func (c *Circuit) extremes(p *Panel) (low, high float64) {
 	c.random(p)
 	copy(p.z, p.r)
-	c.factor.apply(p.z)
+	c.inner.apply(p.z)
 	copy(p.d, p.z)
 	rz := dots(p.r, p.z)
 	first := rz
@@ -217,7 +212,7 @@ func (c *Circuit) extremes(p *Panel) (low, high float64) {
 			}
 		}
 		copy(p.z, p.r)
-		c.factor.apply(p.z)
+		c.inner.apply(p.z)
 		next := dots(p.r, p.z)
 		for l := range beta {
 			beta[l] = 0

@@ -98,14 +98,21 @@ func (t *tree) arrange(net *graphio.Network) {
 			next[p]++
 		}
 	}
-	t.order = append(make([]int32, 0, n), t.roots...)
+	// Depth first, so that a node and its parent are met close together.
+	t.order = make([]int32, 0, n)
 	adds := make([]float64, n)
-	for i := 0; i < len(t.order); i++ {
-		v := t.order[i]
+	var stack []int32
+	for i := len(t.roots) - 1; i >= 0; i-- {
+		stack = append(stack, t.roots[i])
+	}
+	for len(stack) > 0 {
+		v := stack[len(stack)-1]
+		stack = stack[:len(stack)-1]
+		t.order = append(t.order, v)
 		if p := t.parent[v]; p != none {
 			adds[v] = adds[p] + float64(len(net.Arcs(int(v))))
 		}
 		t.adds = max(t.adds, adds[v])
-		t.order = append(t.order, child[begin[v]:begin[v+1]]...)
+		stack = append(stack, child[begin[v]:begin[v+1]]...)
 	}
 }
