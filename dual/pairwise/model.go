@@ -125,6 +125,19 @@ func fingerprint(net *graphio.Network) string {
 	return hex.EncodeToString(h.Sum(nil))
 }
 
+// Estimator makes vectors of the model's weights, whose L1 distances are its
+// estimates (Options.KeepVectors), for the network it was made on.
+func (m *Model) Estimator(net *graphio.Network) (*dual.Estimator, error) {
+	if err := m.fits(net, Options{Shares: m.Mass == massWord(true), Unmatched: m.Unmatched, KeepVectors: true}); err != nil {
+		return nil, err
+	}
+	t, err := m.terms(net)
+	if err != nil {
+		return nil, err
+	}
+	return t.Weigh(m.Weights)
+}
+
 // terms prepares what the weights are of.
 func (m *Model) terms(net *graphio.Network) (*dual.Terms, error) {
 	opt := dual.TermOptions{Flows: m.Flows, Groups: m.Groups, Unmatched: m.Unmatched}

@@ -174,6 +174,13 @@ func (v *Vectors) Close() error {
 	return err
 }
 
+// Compare is the L1 distance of all pairs of rows of an embedding, whatever its
+// scales. Cost: O(rows² width).
+func Compare(ctx context.Context, names []string, e *dual.Embedding, opt Options) (*Matrix, error) {
+	m := newMatrix(names, false, false)
+	return m, m.addColumns(ctx, e.Vectors, e.Width, opt, opt.stage("estimate"))
+}
+
 // compare sets every pair of m to the L1 distance of its vectors.
 func (m *Matrix) compare(ctx context.Context, v *Vectors, opt Options) error {
 	if !v.OnDisk {

@@ -1,0 +1,3 @@
+package inference
+
+var Half = half
