@@ -54,12 +54,14 @@ func twins(t testing.TB, net *graphio.Network, pairs int, totals [2]int, seed ui
 }
 
 // limits are the 99 % interval of a binomial count, by gonum's distribution.
-func limits(n int, p float64) (low, high int) {
+func limits(n int, p float64) (low, high int) { return limitsAt(n, p, 0.01) }
+
+func limitsAt(n int, p, outside float64) (low, high int) {
 	b := distuv.Binomial{N: float64(n), P: p}
-	for b.CDF(float64(low)) < 0.005 {
+	for b.CDF(float64(low)) < outside/2 {
 		low++
 	}
-	for high = low; b.CDF(float64(high)) < 0.995; high++ {
+	for high = low; b.CDF(float64(high)) < 1-outside/2; high++ {
 	}
 	return low, high
 }
