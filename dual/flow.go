@@ -53,23 +53,32 @@ type FlowEmbedding struct {
 // threads (0: the number of processors).
 //
 // Errors: samples of another network; the context's, with nothing returned.
-// Cost: O(nodes + edges) a sample for each step of the solver, of which road
-// networks of up to a hundred thousand nodes need one; 4 bytes an edge a sample,
-// and 320 bytes a node for every thread.
+// Cost: O(nodes + edges) a sample, and for each of some twenty steps of the
+// solver as much again on what exact elimination leaves, which road networks of
+// up to a hundred thousand nodes do not need; 4 bytes an edge a sample, and 32
+// bytes an edge and 128 to 320 a node for every thread.
 func (f *Flow) Embed(ctx context.Context, samples *graphio.Samples, threads int, progress func(done, total int)) (*FlowEmbedding, error) {
-	if samples.Order() != f.order {
-		return nil, fmt.Errorf("dual: samples over %d nodes for a network of %d; want samples read with this network", samples.Order(), f.order)
-	}
 	n, width := samples.Len(), f.Width()
 	e := &FlowEmbedding{
 		Embedding: &Embedding{Scales: []Scale{{Name: "flow", End: width, Weight: 1}}, Width: width, Rows: n, Vectors: make([]float32, n*width)},
-		Slack:     make([]float64, n),
 	}
-	err := f.route(ctx, n, samples.At, e.Row, threads, progress, func(i int, slack float64) { e.Slack[i] = slack })
+	var err error
+	e.Slack, err = f.EmbedRows(ctx, samples, e.Row, threads, progress)
 	if err != nil {
 		return nil, err
 	}
 	return e, nil
+}
+
+// EmbedRows is Embed into the rows given, each of Width values, which all have
+// to be held at once; it returns the slack of each sample.
+func (f *Flow) EmbedRows(ctx context.Context, samples *graphio.Samples, row func(i int) []float32, threads int, progress func(done, total int)) (slack []float64, err error) {
+	if samples.Order() != f.order {
+		return nil, fmt.Errorf("dual: samples over %d nodes for a network of %d; want samples read with this network", samples.Order(), f.order)
+	}
+	slack = make([]float64, samples.Len())
+	err = f.route(ctx, samples.Len(), samples.At, row, threads, progress, func(i int, x float64) { slack[i] = x })
+	return slack, err
 }
 
 // route routes n samples into rows. took, if not nil, gets what Route says of
@@ -122,7 +131,19 @@ func (e *FlowEmbedding) Upper(i, j int) float64 {
 	var sum [1]float64
 	e.Terms(i, j, sum[:])
 	// Each difference is rounded to float32, and summed up in float64.
-	bound := (sum[0]*(1+0x1p-24) + e.Slack[i] + e.Slack[j]) * (1 + float64(e.Width+64)*0x1p-53)
+	return outward(sum[0]*(1+0x1p-24)+e.Slack[i]+e.Slack[j], e.Width)
+}
+
+// UpperOf is Upper from a sum that AddDistances made of two vectors of the given
+// width, each of whose values went through a difference, at most 32 sums of a
+// lane and 3 of lanes in float32: 36 roundings.
+func UpperOf(sum, slackA, slackB float64, width int) float64 {
+	return outward(sum*(1+36*0x1p-23)+slackA+slackB, width)
+}
+
+// outward adds what summing up as many values in float64 may have lost.
+func outward(bound float64, width int) float64 {
+	bound *= 1 + float64(width+64)*0x1p-53
 	if math.IsNaN(bound) {
 		return math.Inf(1)
 	}

@@ -113,7 +113,7 @@ func (set *settings) check() error {
 		if set.samples == "" {
 			return usageError{"no samples: want --samples FILE"}
 		}
-		if err := oneOf("--method", set.method, "multiscale", "exact", "kernel", "variation"); err != nil {
+		if err := oneOf("--method", set.method, set.methods()...); err != nil {
 			return err
 		}
 		if err := oneOf("--mass", set.mass, "share", "amount"); err != nil {
@@ -122,9 +122,8 @@ func (set *settings) check() error {
 		if !(set.unmatched >= 0) || math.IsInf(set.unmatched, 0) {
 			return usageError{fmt.Sprintf("--unmatched %v; want a cost of 0 or more (0: no mass is created or removed)", set.unmatched)}
 		}
-		transport := set.method == "multiscale" || set.method == "exact"
-		if set.unmatched > 0 && !transport {
-			return usageError{fmt.Sprintf("--unmatched with --method %s; want multiscale or exact, which move mass", set.method)}
+		if set.unmatched > 0 && !movesMass(set.method) {
+			return usageError{fmt.Sprintf("--unmatched with --method %s; want a method that moves mass, like multiscale or exact", set.method)}
 		}
 		if set.mass == "amount" && set.method == "kernel" {
 			return usageError{"--mass amount with --method kernel; want share: the kernel compares shares"}
@@ -151,13 +150,25 @@ func (set *settings) check() error {
 	return err
 }
 
+// methods are those of the command.
+func (set *settings) methods() []string {
+	list := []string{"multiscale", "exact", "kernel", "variation"}
+	if set.flags.Lookup("calibrate") != nil { // of a whole matrix
+		list = append(list, "flow", "hierarchy")
+	}
+	return list
+}
+
+// movesMass reports whether a method is about moving mass along edges.
+func movesMass(method string) bool { return method != "kernel" && method != "variation" }
+
 // checkVectors refuses flags of matrix that contradict each other.
 func (set *settings) checkVectors() error {
 	if err := oneOf("--hold", set.hold, "auto", "memory", "disk"); err != nil {
 		return err
 	}
-	if set.vectors && set.method != "multiscale" {
-		return usageError{fmt.Sprintf("--vectors with --method %s; want multiscale, whose estimates are distances of vectors", set.method)}
+	if set.vectors && !slices.Contains([]string{"multiscale", "flow", "hierarchy"}, set.method) {
+		return usageError{fmt.Sprintf("--vectors with --method %s; want multiscale, flow or hierarchy, whose distances are those of vectors", set.method)}
 	}
 	if set.stored != "" && set.method != "multiscale" {
 		return usageError{fmt.Sprintf("--calibration with --method %s; want multiscale, which is calibrated", set.method)}

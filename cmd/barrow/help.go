@@ -100,6 +100,10 @@ Method
                         default). Calibrated, they have the unit of your edge
                         lengths
            exact        every pair solved and proved; honours one-way edges
+           flow         an upper bound of every distance, proved, without solving
+                        any pair
+           hierarchy    along a spanning tree: the cheapest that knows lengths,
+                        and exact where the network is a tree
            kernel       maximum mean discrepancy under heat kernels; no unit
            variation    half the sum of differences, blind to where nodes lie
   --calibrate N         solve N random pairs exactly, fit the estimates on half

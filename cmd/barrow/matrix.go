@@ -117,6 +117,7 @@ func (s *session) measure(set *settings, d *data, recorded *record) (*pairwise.R
 
 var methods = map[string]func(context.Context, *graphio.Network, *graphio.Samples, pairwise.Options) (*pairwise.Result, error){
 	"multiscale": pairwise.Multiscale, "exact": pairwise.Exact, "kernel": pairwise.Kernel, "variation": pairwise.Variation,
+	"flow": pairwise.Flow, "hierarchy": pairwise.Hierarchy,
 }
 
 func pairCount(d *data) int {
@@ -178,7 +179,7 @@ func (f *folder) writeMatrices(d *data, set *settings, r *pairwise.Result) error
 			return writeCalibration(w, r.Matrix.Names, r.Calibration)
 		})
 	}
-	if err == nil && r.Calibration != nil {
+	if err == nil && r.Calibration != nil && r.Model != nil {
 		err = f.write("calibration.json", func(w *bufio.Writer) error {
 			_, err := r.Model.WriteTo(w)
 			return err
@@ -255,8 +256,16 @@ func methodLine(method string, r *pairwise.Result) string {
 		return "kernel: maximum mean discrepancy under heat kernels"
 	case "variation":
 		return "variation: half the sum of node-by-node differences, blind to where nodes lie"
+	case "flow":
+		return "flow: what it costs to move the mass as current flows; no distance is larger"
 	}
 	c := r.Calibration
+	if method == "hierarchy" {
+		if c == nil {
+			return "hierarchy: distances along a spanning tree; exact where the network is a tree, else no distance is larger"
+		}
+		return "hierarchy, calibrated on " + qualityLine(c.Quality())
+	}
 	if c == nil && r.Model != nil {
 		return "multiscale, by a calibration of an earlier run, on " + qualityLine(r.Model.Quality)
 	}

@@ -133,7 +133,7 @@ func chosen(set *settings, d *data, names []string) (p, q graphio.Sample, err er
 			return p, q, err
 		}
 	}
-	if moves := set.method == "exact" || set.method == "multiscale"; moves && set.unmatched == 0 {
+	if movesMass(set.method) && set.unmatched == 0 {
 		err = graphio.CheckConnected(d.net, both)
 	}
 	return both.At(0), both.At(1), err

@@ -58,17 +58,20 @@ type recordedVectors struct {
 // node.
 type recordedCalibration struct {
 	*pairwise.Quality
-	Terms         []string  `json:"terms"`
+	Terms         []string  `json:"terms,omitempty"`
 	Weights       []float64 `json:"weights"`
-	Witnesses     int       `json:"witnesses"`
-	WitnessWeight float64   `json:"witness_weight"`
+	Witnesses     int       `json:"witnesses,omitempty"`
+	WitnessWeight float64   `json:"witness_weight,omitempty"`
 }
 
 // choicesOf is what a run decided by itself.
 func choicesOf(r *pairwise.Result) choices {
 	c := choices{Diffusion: r.Diffusion}
-	if m := r.Model; m != nil {
+	switch m := r.Model; {
+	case m != nil:
 		c.Calibration = &recordedCalibration{m.Quality, m.Terms, m.Weights, len(m.Witnesses), m.WitnessWeight}
+	case r.Calibration != nil:
+		c.Calibration = &recordedCalibration{Quality: r.Calibration.Quality(), Weights: r.Calibration.Weights}
 	}
 	if r.Width > 0 {
 		c.Vectors = &recordedVectors{r.Width, "memory"}

@@ -65,21 +65,40 @@ func (opt Options) pairs(samples int, net *graphio.Network) int {
 // calibrate solves random pairs and fits conductances and weights on every
 // other one; the rest is for judge.
 func calibrate(ctx context.Context, net *graphio.Network, compared *graphio.Samples, count int, opt Options) (*Calibration, *dual.Terms, error) {
-	pairs := randomPairs(compared.Len(), net.Directed(), count, opt.Seed)
-	c := &Calibration{Pairs: make([]CalibrationPair, count)}
-	out := heldOut(count, opt.Seed)
-	witness := make([]potentials, count)
-	err := solvePairs(ctx, net, compared, pairs, opt, "calibrate", func(k int, r *exact.Result) {
-		c.Pairs[k] = CalibrationPair{I: pairs[k].i, J: pairs[k].j, Exact: r.Distance(), HeldOut: out[k]}
-		if !out[k] && !opt.KeepVectors {
-			witness[k] = shortened(r.Potential)
-		}
-	})
+	c, witness, err := solved(ctx, net, compared, count, opt)
 	if err != nil {
 		return nil, nil, err
 	}
 	terms, err := c.fit(ctx, net, compared, witness, opt)
 	return c, terms, err
+}
+
+// solved solves random pairs. witness has the potentials of those that are not
+// held out, none where there are to be vectors.
+func solved(ctx context.Context, net *graphio.Network, compared *graphio.Samples, count int, opt Options) (c *Calibration, witness []potentials, err error) {
+	pairs := randomPairs(compared.Len(), net.Directed(), count, opt.Seed)
+	c = &Calibration{Pairs: make([]CalibrationPair, count)}
+	out := heldOut(count, opt.Seed)
+	witness = make([]potentials, count)
+	err = solvePairs(ctx, net, compared, pairs, opt, "calibrate", func(k int, r *exact.Result) {
+		c.Pairs[k] = CalibrationPair{I: pairs[k].i, J: pairs[k].j, Exact: r.Distance(), HeldOut: out[k]}
+		if !out[k] && !opt.KeepVectors {
+			witness[k] = shortened(r.Potential)
+		}
+	})
+	return c, witness, err
+}
+
+// fitted are the pairs to be fitted, and their distances. Pairs at distance 0
+// say nothing about relative errors.
+func (c *Calibration) fitted(compared *graphio.Samples) (pairs []dual.Pair, distance []float64) {
+	for _, p := range c.Pairs {
+		if !p.HeldOut && p.Exact > 0 {
+			pairs = append(pairs, dual.Pair{P: compared.At(p.I), Q: compared.At(p.J)})
+			distance = append(distance, p.Exact)
+		}
+	}
+	return pairs, distance
 }
 
 func shortened(x []float64) potentials {
@@ -91,20 +110,13 @@ func shortened(x []float64) potentials {
 }
 
 // fit finds the conductances and the non-negative weights with the least
-// squares of relative errors on the pairs that are not held out. Pairs at
-// distance 0 say nothing about relative errors. witness has the potential of
-// each pair, nil for none.
+// squares of relative errors on the pairs that are not held out. witness has the
+// potential of each pair, nil for none.
 func (c *Calibration) fit(ctx context.Context, net *graphio.Network, compared *graphio.Samples, witness []potentials, opt Options) (*dual.Terms, error) {
-	var fitted []dual.Pair
-	var distance []float64
+	fitted, distance := c.fitted(compared)
 	var proofs []potentials
 	for k, p := range c.Pairs {
-		if p.HeldOut || p.Exact <= 0 {
-			continue
-		}
-		fitted = append(fitted, dual.Pair{P: compared.At(p.I), Q: compared.At(p.J)})
-		distance = append(distance, p.Exact)
-		if witness[k] != nil {
+		if !p.HeldOut && p.Exact > 0 && witness[k] != nil {
 			proofs = append(proofs, witness[k])
 		}
 	}
@@ -260,13 +272,20 @@ func (c *Calibration) judge(m *Matrix) {
 		p.Estimate = m.At(p.I, p.J)
 	}
 	c.measure()
+	if c.model != nil {
+		c.model.Quality = c.Quality()
+	}
+}
+
+// Quality is what is known of the calibration, for the record.
+func (c *Calibration) Quality() *Quality {
 	known := func(x float64) *float64 {
 		if math.IsNaN(x) {
 			return nil
 		}
 		return &x
 	}
-	c.model.Quality = &Quality{Pairs: len(c.Pairs), HeldOut: c.HeldOut, Spearman: known(c.Spearman), MedianError: known(c.MedianError), P95: known(c.P95)}
+	return &Quality{Pairs: len(c.Pairs), HeldOut: c.HeldOut, Spearman: known(c.Spearman), MedianError: known(c.MedianError), P95: known(c.P95)}
 }
 
 // measure sets the errors on the held-out pairs.

@@ -170,11 +170,7 @@ func newModel(ctx context.Context, net *graphio.Network, fitted []dual.Pair, opt
 		Mass: massWord(opt.Shares), Unmatched: opt.Unmatched,
 		Groups: max(1, min(8, len(fitted)/4)),
 	}
-	rounds := 6
-	if net.Order() > 200_000 {
-		rounds = 3 // each costs as much as embedding dozens of samples
-	}
-	conductance, err := dual.Reweight(ctx, net, fitted, opt.Unmatched, rounds, opt.Threads)
+	conductance, err := dual.Reweight(ctx, net, fitted, opt.Unmatched, rounds(net), opt.Threads)
 	if err != nil {
 		return nil, err
 	}
@@ -183,6 +179,14 @@ func newModel(ctx context.Context, net *graphio.Network, fitted []dual.Pair, opt
 	}
 	m.Flows = append(m.Flows, conductance)
 	return m, nil
+}
+
+// rounds is how often conductances are fitted.
+func rounds(net *graphio.Network) int {
+	if net.Order() > 200_000 {
+		return 3 // each costs as much as embedding dozens of samples
+	}
+	return 6
 }
 
 // small is the number of nodes up to which vectors may be longer: with the plain

@@ -25,7 +25,7 @@ type method struct {
 	run  func(context.Context, *graphio.Network, *graphio.Samples, Options) (*Result, error)
 }
 
-var methods = []method{{"exact", Exact}, {"multiscale", Multiscale}, {"kernel", Kernel}, {"variation", Variation}}
+var methods = []method{{"exact", Exact}, {"multiscale", Multiscale}, {"kernel", Kernel}, {"variation", Variation}, {"flow", Flow}, {"hierarchy", Hierarchy}}
 
 func must(t testing.TB, m method, net *graphio.Network, samples *graphio.Samples, opt Options) *Result {
 	t.Helper()
