@@ -50,8 +50,11 @@ func bounded(ctx context.Context, net *graphio.Network, compared *graphio.Sample
 		e.flow, err = flow()
 		return e, err
 	}, opt, func() error { return nil })
-	if err != nil || net.Directed() {
-		return r, err
+	if err != nil {
+		return nil, err
+	}
+	if net.Directed() {
+		return r, nil
 	}
 	m := r.Matrix
 	m.Lower, m.Upper = make([]float64, len(m.Value)), make([]float64, len(m.Value))
