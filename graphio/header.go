@@ -12,6 +12,7 @@ const (
 	nodesFile  = "a nodes file (node[,x,y] or node[,lon,lat], [,district])"
 	longFile   = "a samples file (sample,node,value)"
 	wideFile   = "a samples file (node, then a column for each sample)"
+	matrixFile = "a square matrix with a header of names and the same names down the first column (matrix.csv)"
 	groupsFile = "a groups file (sample, then a column for each factor)"
 	anySamples = "a samples file (sample,node,value; or node, then a column for each sample; or Matrix Market or NumPy)"
 )

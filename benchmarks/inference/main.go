@@ -61,12 +61,10 @@ func levels(sets int) error {
 	fmt.Printf("| test and design | called at 5 %% in %d sets (%d–%d) | at 1 %% (%d–%d) |\n|---|--:|--:|\n", sets, low5, high5, low1, high1)
 	mark := func(d nulls.Design, count, low, high int) string {
 		switch {
-		case count > high:
+		case count > high && d.Note == "":
 			return fmt.Sprintf("**%d, too often**", count)
 		case count < low && !d.Conservative:
 			return fmt.Sprintf("**%d, too seldom**", count)
-		case count < low:
-			return fmt.Sprintf("%d (ties)", count)
 		}
 		return fmt.Sprint(count)
 	}
@@ -84,7 +82,11 @@ func levels(sets int) error {
 				one++
 			}
 		}
-		fmt.Printf("| %s | %s | %s |\n", d.Name, mark(d, five, low5, high5), mark(d, one, low1, high1))
+		name := d.Name
+		if d.Note != "" {
+			name += " (" + d.Note + ")"
+		}
+		fmt.Printf("| %s | %s | %s |\n", name, mark(d, five, low5, high5), mark(d, one, low1, high1))
 	}
 	return nil
 }
@@ -137,8 +139,8 @@ func speed() error {
 				_, err := inference.Energy(context.Background(), d, factor, inference.Scheme{}, opt)
 				return err
 			}},
-			{"dispersion, centroid", func() error {
-				_, err := inference.Dispersion(context.Background(), d, factor, inference.Centroid, inference.Scheme{}, opt)
+			{"dispersion", func() error {
+				_, err := inference.Dispersion(context.Background(), d, factor, inference.Scheme{}, opt)
 				return err
 			}},
 			{"Mantel", func() error {

@@ -30,6 +30,8 @@ type settings struct {
 	stored, hold            string
 	vectors                 bool
 	timeLimit               time.Duration
+	test                    testFlags
+	noise                   noiseFlags
 
 	seed    uint64
 	threads int
@@ -47,10 +49,10 @@ var unrecorded = []string{"out", "replace", "replay", "help"}
 var harmless = []string{"threads", "memory", "hold"}
 
 // Flags that name files; what they hold counts, not where it stands.
-var files = []string{"edges", "nodes", "samples", "groups", "rows", "columns", "calibration"}
+var files = []string{"edges", "nodes", "samples", "groups", "rows", "columns", "calibration", "distances", "against", "without"}
 
 func newSettings(command string) *settings {
-	set := &settings{flags: pflag.NewFlagSet(command, pflag.ContinueOnError)}
+	set := &settings{flags: pflag.NewFlagSet(command, pflag.ContinueOnError), hold: "auto"}
 	set.flags.SortFlags = false
 	set.flags.Usage = func() {}
 	return set
@@ -106,11 +108,11 @@ func (set *settings) parse(args []string) ([]string, error) {
 // check refuses values out of range.
 func (set *settings) check() error {
 	has := func(name string) bool { return set.flags.Lookup(name) != nil }
-	if set.edges == "" {
+	if set.edges == "" && set.test.distances == "" {
 		return usageError{"no network: want --edges FILE"}
 	}
 	if has("method") {
-		if set.samples == "" {
+		if set.samples == "" && set.test.distances == "" {
 			return usageError{"no samples: want --samples FILE"}
 		}
 		if err := oneOf("--method", set.method, set.methods()...); err != nil {

@@ -16,7 +16,8 @@ import (
 // resultFiles are all that a results folder may hold of barrow; the record comes
 // last.
 var resultFiles = []string{
-	"matrix.csv", "pairs.csv", "calibration.csv", "calibration.json", "vectors.npy", "vectors.json", "flows.csv", "potentials.csv", "unmatched.csv", recordFile,
+	"matrix.csv", "pairs.csv", "calibration.csv", "calibration.json", "vectors.npy", "vectors.json", "flows.csv", "potentials.csv", "unmatched.csv",
+	"tests.csv", "comparisons.csv", "where.csv", "noise.csv", "map.csv", "tree.nwk", "clusters.csv", "outliers.csv", recordFile,
 }
 
 // A folder takes results. They are written to a hidden folder beside it and

@@ -12,6 +12,9 @@ Commands
   inspect    describe a network and its samples, and list every problem found
   matrix     distances between all samples
   pair A B   compare two samples: distance, proof, flow on every edge
+  test       do groups of samples differ by more than chance, and where
+  noise      which distances are more than counting noise
+  shape      a map, a tree and groups of the samples
   demo DIR   write an invented town and run the main job on it
   help       this text; barrow help COMMAND or barrow COMMAND --help for more
   version    which barrow this is
@@ -181,4 +184,112 @@ Results
   DIR/edges.csv, nodes.csv, samples.csv, groups.csv   the town; lengths in metres
   DIR/results                                         barrow matrix on it
   DIR/bridge                                          barrow pair: one hour, both weeks
+`
+
+const testHelp = `barrow test asks whether groups of samples differ by more than chance, where, and
+whether two matrices go together. Samples are exchanged as the design allows, and
+what comes of it is compared with what was seen.
+
+Example
+  barrow test --edges harbour/edges.csv --samples harbour/samples.csv --groups harbour/groups.csv --by week --test energy,dispersion --out weeks
+` + inputHelp + `
+  --distances FILE      instead of these: a matrix.csv
+  --groups FILE         sample, and any columns; a row for each sample
+
+Question
+  --by COLUMN,…         what tells the groups apart; several are tested in this
+                        order (sequential sums of squares), A:B is an interaction
+  --given COLUMN,…      fitted first and not tested: covariates
+  --numbers COLUMN,…    columns that hold numbers, not labels
+  --test NAME,…         pseudo-f     places (Anderson 2001); the default, with
+                        energy       any difference (Székely & Rizzo 2013), and
+                        dispersion   spread (Anderson 2006)
+                        kernel       heat kernels at all scales (Gretton et al. 2012)
+                        anosim       ranks (Clarke 1993)
+  --pairs               also every two groups, with adjusted P
+  --where WHAT          where they differ: districts, nodes, or scales (nodes
+                        after diffusion too), with P adjusted over all places
+                        (Westfall & Young 1993)
+  --against FILE        does another matrix go with this one (Mantel 1967;
+                        Procrustes); --without FILE takes a third one out
+
+Design
+  --blocks COLUMN       exchange within blocks only; pairs are blocks of two
+  --plots COLUMN        exchange whole plots, for factors given to plots
+  --shift               rotate the series instead, for samples in time order;
+  --together            all blocks by the same amount
+  --permutations N      999 by default; all rearrangements where they are fewer
+  --stop N              stop once N reached what was seen; 0, the default, does not
+  --level P             where P is called small, 0.05 by default
+  --method NAME         how distances are made, see barrow help matrix
+  --calibrate N|auto    pairs solved exactly for multiscale
+  --seed N              another choice of permutations and pairs; 1 by default
+` + comparisonHelp + runHelp + replayHelp + `
+Results
+  --out DIR             tests by default:
+                          tests.csv        test,factor,statistic,p,p_error,…
+                          comparisons.csv  every two groups (--pairs)
+                          where.csv        place,statistic,p,adjusted,mean …
+                          run.json         what was run, on what
+  --replace             write over results of another run in DIR
+`
+
+const noiseHelp = `barrow noise asks which distances are more than counting noise. Two samples of
+counts from the same source are never at distance 0: the counts of every sample
+are halved at random, again and again, and the differences of the halves show what
+counting alone makes.
+
+Example
+  barrow noise --edges harbour/edges.csv --samples harbour/samples.csv --draws 19 --out noise
+` + inputHelp + `
+  --groups FILE         sample, and any columns, for --replicates
+
+Noise
+  --draws N             halvings of every sample; 199 by default
+  --dispersion X|auto   variance of the counts over that of plain counts; 1 by
+                        default; auto finds it from replicates
+  --replicates COLUMN   samples of one label are of one source
+  --shift-of DISTANCE   also: how many counts a sample needs for a shift of that
+                        distance to stand out
+  --calibrate N|auto    pairs solved exactly to scale the distances
+  --seed N              other draws and pairs; 1 by default
+` + comparisonHelp + runHelp + replayHelp + `
+Results
+  --out DIR             noise by default:
+                          pairs.csv        a,b,distance,floor,excess,p,
+                                           false_discovery: floor is the mean of
+                                           noise, p how often noise makes as much
+                          noise.csv        sample,counts,replicate,upper95
+                                           [,needed]: the distance of two samples
+                                           like it, mean and 95th percentile
+                          run.json         what was run, on what
+  --replace             write over results of another run in DIR
+`
+
+const shapeHelp = `barrow shape draws a collection of samples by its distances: a map, a tree, groups
+around typical samples, and those that lie apart.
+
+Example
+  barrow shape --edges harbour/edges.csv --samples harbour/samples.csv --clusters 4 --out shape
+` + inputHelp + `
+  --distances FILE      instead of these: a matrix.csv
+
+Shape
+  --axes N              of the map (classical scaling, Torgerson 1952); 2
+  --linkage NAME        of the tree: average (the default), complete, single, ward
+  --clusters N          around medoids; 0, the default, takes the number up to ten
+                        whose silhouette is best (Rousseeuw 1987)
+  --neighbours K        samples apart are those far from their K nearest; 3
+  --method NAME         how distances are made, see barrow help matrix
+  --calibrate N|auto    pairs solved exactly for multiscale
+  --seed N              another choice of those pairs; 1 by default
+` + comparisonHelp + runHelp + replayHelp + `
+Results
+  --out DIR             shape by default:
+                          map.csv          sample,axis1,axis2
+                          tree.nwk         the tree, in Newick form
+                          clusters.csv     sample,cluster,medoid,silhouette
+                          outliers.csv     sample,score,excess,p,false_discovery
+                          run.json         what was run, on what
+  --replace             write over results of another run in DIR
 `

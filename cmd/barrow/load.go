@@ -18,6 +18,9 @@ type data struct {
 	inputs   []graphio.InputFile
 	warnings []string
 	model    *pairwise.Model // of --calibration; nil without
+
+	groups                      *graphio.Groups
+	distances, against, without *pairwise.Matrix // of files
 }
 
 // load reads the network and, where given, the samples.
@@ -27,6 +30,9 @@ func (s *session) load(set *settings) (*data, error) {
 	}
 	d := &data{}
 	err := s.phases.Time("load", func() error {
+		if set.edges == "" { // a matrix alone, see barrow test
+			return d.readMatrices(set)
+		}
 		net, source, err := graphio.ReadNetwork(set.edges, set.nodes, set.network())
 		if err != nil {
 			return err
@@ -45,6 +51,9 @@ func (s *session) load(set *settings) (*data, error) {
 				return err
 			}
 		}
+		if err := d.readMatrices(set); err != nil {
+			return err
+		}
 		return s.ctx.Err()
 	})
 	if err != nil {
@@ -54,6 +63,59 @@ func (s *session) load(set *settings) (*data, error) {
 		s.note(w)
 	}
 	return d, nil
+}
+
+// readMatrices reads matrices of distances, and then groups, whose samples are
+// those of the distances or of the samples file.
+func (d *data) readMatrices(set *settings) error {
+	for _, m := range []struct {
+		path string
+		to   **pairwise.Matrix
+	}{{set.test.distances, &d.distances}, {set.test.against, &d.against}, {set.test.without, &d.without}} {
+		if m.path == "" {
+			continue
+		}
+		table, source, err := graphio.ReadMatrix(m.path)
+		if err != nil {
+			return err
+		}
+		d.add(source)
+		if *m.to, err = symmetric(m.path, table); err != nil {
+			return err
+		}
+	}
+	if set.groups == "" {
+		return nil
+	}
+	samples := d.samples
+	if d.distances != nil {
+		var err error
+		if samples, err = named(d.distances.Names); err != nil {
+			return err
+		}
+	}
+	groups, source, err := graphio.ReadGroups(set.groups, samples)
+	if err != nil {
+		return err
+	}
+	d.groups = groups
+	d.add(source)
+	return nil
+}
+
+// symmetric is a table as a matrix of distances without direction.
+func symmetric(path string, t *graphio.LabelledMatrix) (*pairwise.Matrix, error) {
+	n := len(t.Names)
+	m := &pairwise.Matrix{Names: t.Names}
+	for i := range n {
+		for j := i + 1; j < n; j++ {
+			if t.Value[i*n+j] != t.Value[j*n+i] {
+				return nil, oneFault(path, fmt.Sprintf("%v from %q to %q and %v back", t.Value[i*n+j], t.Names[i], t.Names[j], t.Value[j*n+i]), "the same distance both ways: a matrix of a network without directions")
+			}
+			m.Value = append(m.Value, t.Value[i*n+j])
+		}
+	}
+	return m, nil
 }
 
 // affordable refuses files that are too large to hold before they are read.

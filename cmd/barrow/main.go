@@ -59,6 +59,9 @@ var commands = []struct {
 	{"inspect", inspectHelp, (*session).inspect},
 	{"matrix", matrixHelp, (*session).matrix},
 	{"pair", pairHelp, (*session).pair},
+	{"test", testHelp, (*session).testSamples},
+	{"noise", noiseHelp, (*session).noise},
+	{"shape", shapeHelp, (*session).shape},
 	{"demo", demoHelp, (*session).demo},
 }
 
@@ -170,7 +173,7 @@ func (s *session) fail(err error) int {
 			fmt.Fprintf(s.stderr, "%s: %d problems in the input\n  %s\n", name, faults.Total, strings.ReplaceAll(err.Error(), "\n", "\n  "))
 		}
 		return badInput
-	case errors.As(err, &memory), errors.Is(err, exact.ErrTotals), errors.Is(err, exact.ErrUnreachable):
+	case errors.As(err, &memory), badDesign(err), errors.Is(err, exact.ErrTotals), errors.Is(err, exact.ErrUnreachable):
 		fmt.Fprintf(s.stderr, "%s: %v\n", name, err)
 		return badInput
 	}

@@ -188,7 +188,8 @@ func TestHelpIsTrue(t *testing.T) {
 	if examples < len(commands) {
 		t.Errorf("%d examples for %d commands", examples, len(commands))
 	}
-	for command, flags := range map[string][]string{"matrix": recordedFlags(t, "town"), "pair": recordedFlags(t, "bridge")} {
+	for command, flags := range map[string][]string{"matrix": recordedFlags(t, "town"), "pair": recordedFlags(t, "bridge"),
+		"test": recordedFlags(t, "weeks"), "noise": recordedFlags(t, "noise"), "shape": recordedFlags(t, "shape")} {
 		help, _, _ := call("help", command)
 		for _, f := range append(flags, "out", "replace", "replay") {
 			if !strings.Contains(help, "--"+f) {

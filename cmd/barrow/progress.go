@@ -18,6 +18,7 @@ var stageText = map[string]string{
 	"calibrate": "pairs solved exactly to calibrate",
 	"estimate":  "pairs estimated",
 	"exact":     "pairs solved exactly",
+	"noise":     "draws of noise",
 }
 
 // progress shows one bar a stage, on a terminal only.

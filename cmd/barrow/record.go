@@ -92,6 +92,10 @@ func (s *session) newRecord(set *settings, arguments []string, d *data) *record 
 	for _, in := range d.inputs {
 		r.Inputs = append(r.Inputs, recordedFile(in))
 	}
+	if d.net == nil { // matrices alone
+		r.Counts = map[string]int{"samples": len(d.distances.Names)}
+		return r
+	}
 	_, parts := d.net.Components()
 	entries := 0
 	for i := range d.samples.Len() {
@@ -116,6 +120,8 @@ func parameters(flags *pflag.FlagSet) map[string]any {
 			values[f.Name] = text == "true"
 		case "int", "uint64", "float64":
 			values[f.Name] = json.Number(text)
+		case "stringSlice":
+			values[f.Name] = text[1 : len(text)-1] // without the brackets, as it is typed
 		default:
 			values[f.Name] = text
 		}

@@ -10,31 +10,24 @@ import (
 	"example.org/barrow/dual/pairwise"
 )
 
-// A Centre is what spread is measured from.
-type Centre int
-
-const (
-	// Median is the spatial median of a group's principal coordinates, found
-	// separately over the real and the imaginary axes; little moved by single
-	// samples far out. Cost: an eigendecomposition, O(n³).
-	Median Centre = iota
-	// Centroid is the mean; no coordinates are needed.
-	Centroid
-)
-
 // Dispersion tests whether groups are spread equally about their centres: the
 // F of an analysis of variance of the samples' distances z from their group's
 // centre (Anderson 2006), a multivariate form of Levene's test. A difference
-// found by PseudoF with none here is one of place.
+// found by PseudoF with none here is one of place. The centre is the spatial
+// median of the group's principal coordinates, found separately over the real
+// and the imaginary axes and little moved by single samples far out. (About
+// centroids, which one such sample moves for its whole group, P came out below
+// 5 % in 8 of 100 sets of heavy-tailed data without effect; see Spreads.)
 //
 // The statistic is of plain z. For P, z is rearranged after division by
 // √(1 − 1/size), which undoes the shrinking of a centre fitted to few samples
 // (O'Brien 1992), and F is taken of that in all arrangements: without it small
-// groups look tight. P is approximate; groups below about 5 samples say little.
+// groups look tight. P is approximate, and with restricted arrangements rather
+// too large; groups below about 5 samples say little.
 //
 // Errors: ErrMatrix, ErrDesign, ErrFew, ErrOption; the context's.
-// Cost: O(n) an arrangement.
-func Dispersion(ctx context.Context, d *pairwise.Matrix, factor Variable, centre Centre, scheme Scheme, opt Options) (*GroupTest, error) {
+// Cost: an eigendecomposition, O(n³), and O(n) an arrangement.
+func Dispersion(ctx context.Context, d *pairwise.Matrix, factor Variable, scheme Scheme, opt Options) (*GroupTest, error) {
 	if err := checkMatrix(d, 4); err != nil {
 		return nil, err
 	}
@@ -42,16 +35,9 @@ func Dispersion(ctx context.Context, d *pairwise.Matrix, factor Variable, centre
 	if err != nil {
 		return nil, err
 	}
-	var z []float64
-	switch centre {
-	case Median:
-		if z, err = g.fromMedian(d); err != nil {
-			return nil, err
-		}
-	case Centroid:
-		z = g.fromCentroid(d)
-	default:
-		return nil, fmt.Errorf("%w: no centre number %d", ErrOption, centre)
+	z, err := g.fromMedian(d)
+	if err != nil {
+		return nil, err
 	}
 	fair := make([]float64, len(z))
 	for i, c := range g.code {
@@ -77,14 +63,36 @@ func Dispersion(ctx context.Context, d *pairwise.Matrix, factor Variable, centre
 		return nil, err
 	}
 	r.Statistic = g.variance(z, nil)
+	r.Groups = g.spreads(z)
+	return r, nil
+}
+
+// Spreads is the mean distance of each group's samples from its centroid, and
+// the F of Anderson 2006 on them; cheap, and without a P. Errors: ErrMatrix,
+// ErrDesign. Cost: O(n²).
+func Spreads(d *pairwise.Matrix, factor Variable) (groups []Group, f float64, err error) {
+	if err := checkMatrix(d, 4); err != nil {
+		return nil, 0, err
+	}
+	g, err := factor.grouping(len(d.Names))
+	if err != nil {
+		return nil, 0, err
+	}
+	z := g.fromCentroid(d)
+	return g.spreads(z), g.variance(z, nil), nil
+}
+
+// spreads is the mean of z by group.
+func (g *grouping) spreads(z []float64) []Group {
 	mean := make([]float64, len(g.size))
 	for i, c := range g.code {
 		mean[c] += z[i] / float64(g.size[c])
 	}
+	var list []Group
 	for c, m := range mean {
-		r.Groups = append(r.Groups, Group{g.names[c], g.size[c], m})
+		list = append(list, Group{g.names[c], g.size[c], m})
 	}
-	return r, nil
+	return list
 }
 
 // variance is the F of an analysis of variance of z by group, sample i having

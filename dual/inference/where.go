@@ -7,7 +7,9 @@ import (
 	"slices"
 
 	"gonum.org/v1/gonum/floats"
+	"gonum.org/v1/gonum/mat"
 
+	"example.org/barrow/diffusion"
 	"example.org/barrow/graphio"
 )
 
@@ -265,4 +267,59 @@ func (m *maxT) p(j *job) (alone, adjusted []float64) {
 		adjusted[f] = largest
 	}
 	return alone, adjusted
+}
+
+// Nodes are the shares of each node, and, for every time given, the same after
+// diffusion for so long: what a node and its surroundings hold at that scale.
+// A node without mass in all samples is left out of the undiffused shares.
+// Errors: samples of another network or without mass. Memory: 8 bytes a node,
+// sample and time. Cost: that of the heat kernel, see diffusion.Walk.Heat.
+func Nodes(net *graphio.Network, samples *graphio.Samples, times []float64) (*Features, error) {
+	if samples.Order() != net.Order() {
+		return nil, fmt.Errorf("samples over %d nodes for a network of %d; want samples read with this network", samples.Order(), net.Order())
+	}
+	shares, err := samples.Shares()
+	if err != nil {
+		return nil, err
+	}
+	n, rows := net.Order(), shares.Len()
+	x := mat.NewDense(n, rows, nil)
+	held := make([]bool, n)
+	for i := range rows {
+		s := shares.At(i)
+		for k, v := range s.Nodes {
+			x.Set(int(v), i, s.Values[k])
+			held[v] = true
+		}
+	}
+	layers := []*mat.Dense{x}
+	if len(times) > 0 {
+		diffused, err := diffusion.NewWalk(net).Heat(x, times, diffusion.HeatOptions{})
+		if err != nil {
+			return nil, err
+		}
+		layers = append(layers, diffused...)
+	}
+	f := &Features{}
+	var columns [][]float64
+	for k, layer := range layers {
+		for v := range n {
+			if k == 0 && !held[v] {
+				continue
+			}
+			name := net.Name(v)
+			if k > 0 {
+				name = fmt.Sprintf("%s at scale %.3g", name, times[k-1])
+			}
+			f.Names = append(f.Names, name)
+			columns = append(columns, layer.RawRowView(v))
+		}
+	}
+	f.Values = make([]float64, rows*len(columns))
+	for c, column := range columns {
+		for i, value := range column {
+			f.Values[i*len(columns)+c] = value
+		}
+	}
+	return f, nil
 }

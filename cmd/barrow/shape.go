@@ -1,0 +1,205 @@
+package main
+
+import (
+	"bufio"
+	"fmt"
+	"io"
+	"slices"
+
+	"example.org/barrow/dual/inference"
+	"example.org/barrow/dual/pairwise"
+)
+
+// shapeFlags are those of barrow shape alone.
+type shapeFlags struct {
+	linkage                    string
+	clusters, axes, neighbours int
+}
+
+var linkages = map[string]inference.Linkage{
+	"average": inference.Average, "complete": inference.Complete, "single": inference.Single, "ward": inference.Ward,
+}
+
+// shape draws the collection: a map, a tree, clusters and outliers.
+func (s *session) shape(args []string) error {
+	set := newSettings(s.command)
+	set.input()
+	set.comparison("multiscale")
+	set.flags.StringVar(&set.calibrate, "calibrate", "auto", "")
+	set.flags.StringVar(&set.test.distances, "distances", "", "")
+	var sh shapeFlags
+	set.flags.StringVar(&sh.linkage, "linkage", "average", "")
+	set.flags.IntVar(&sh.clusters, "clusters", 0, "")
+	set.flags.IntVar(&sh.axes, "axes", 2, "")
+	set.flags.IntVar(&sh.neighbours, "neighbours", 3, "")
+	set.flags.Uint64Var(&set.seed, "seed", 1, "")
+	set.running()
+	set.results("shape")
+	rest, err := set.parse(args)
+	if err != nil {
+		return err
+	}
+	recorded, rest, err := s.settle(set, rest)
+	if err != nil {
+		return err
+	}
+	if len(rest) > 0 {
+		return usageError{fmt.Sprintf("%q, where only flags are taken", rest[0])}
+	}
+	if err := oneOf("--linkage", sh.linkage, "average", "complete", "single", "ward"); err != nil {
+		return err
+	}
+	s.progress.progressTo(s.stderr)
+	d, err := s.load(set)
+	if err != nil {
+		return err
+	}
+	if recorded != nil {
+		if err := recorded.sameFiles(d.inputs); err != nil {
+			return err
+		}
+	}
+	rec := s.newRecord(set, nil, d)
+	f, same, err := openFolder(set.out, set.replace, rec)
+	defer f.discard()
+	if same || err != nil {
+		return s.already(set, err)
+	}
+	m := d.distances
+	if m == nil {
+		if m, err = s.distances(set, d, rec); err != nil {
+			return err
+		}
+	}
+	c := &collection{matrix: m, flags: sh}
+	if err := s.phases.Time("shape", c.find); err != nil {
+		return err
+	}
+	s.progress.end()
+	if err := s.phases.Time("write", func() error { return c.write(f) }); err != nil {
+		return err
+	}
+	return s.close(f, rec, recorded, c.summary)
+}
+
+// A collection is what a matrix looks like as a whole.
+type collection struct {
+	matrix   *pairwise.Matrix
+	flags    shapeFlags
+	plane    *inference.Map
+	tree     *inference.Tree
+	clusters *inference.Clusters
+	outliers []inference.Outlier
+}
+
+func (c *collection) find() (err error) {
+	if c.plane, err = inference.Coordinates(c.matrix, c.flags.axes); err != nil {
+		return err
+	}
+	if c.tree, err = inference.Cluster(c.matrix, linkages[c.flags.linkage]); err != nil {
+		return err
+	}
+	if err := c.divide(); err != nil {
+		return err
+	}
+	n := len(c.matrix.Names)
+	c.outliers, err = inference.Outliers(c.matrix, min(c.flags.neighbours, n-2), 1, nil)
+	return err
+}
+
+// divide finds clusters around medoids: as many as asked for, or the number, up
+// to ten, whose mean silhouette is best.
+func (c *collection) divide() error {
+	n := len(c.matrix.Names)
+	from, to := c.flags.clusters, c.flags.clusters
+	if from == 0 {
+		from, to = 2, min(10, n-1)
+	}
+	for k := from; k <= to; k++ {
+		m, err := inference.Medoids(c.matrix, k)
+		if err != nil {
+			return err
+		}
+		if c.clusters == nil || m.Mean > c.clusters.Mean {
+			c.clusters = m
+		}
+	}
+	return nil
+}
+
+func (c *collection) write(f *folder) error {
+	names := quoted(c.matrix.Names)
+	table := func(file, header string, cells func(r *row, i int)) error {
+		return f.write(file, func(w *bufio.Writer) error {
+			r := &row{w: w}
+			if err := r.text(header).end(); err != nil {
+				return err
+			}
+			for i, name := range names {
+				r.text(name)
+				cells(r, i)
+				if err := r.end(); err != nil {
+					return err
+				}
+			}
+			return nil
+		})
+	}
+	_, axes := c.plane.Coordinates.Dims()
+	header := "sample"
+	for k := range axes {
+		header += fmt.Sprintf(",axis%d", k+1)
+	}
+	err := table("map.csv", header, func(r *row, i int) {
+		for k := range axes {
+			r.number(c.plane.Coordinates.At(i, k))
+		}
+	})
+	if err == nil {
+		err = f.write("tree.nwk", func(w *bufio.Writer) error { _, err := w.WriteString(c.tree.Newick() + "\n"); return err })
+	}
+	if err == nil {
+		err = table("clusters.csv", "sample,cluster,medoid,silhouette", func(r *row, i int) {
+			label := c.clusters.Label[i]
+			r.number(float64(label + 1)).text(names[c.clusters.Medoids[label]]).number(c.clusters.Silhouette[i])
+		})
+	}
+	if err == nil {
+		of := make([]inference.Outlier, len(names))
+		for _, o := range c.outliers {
+			of[o.Sample] = o
+		}
+		err = table("outliers.csv", "sample,score,excess,p,false_discovery", func(r *row, i int) {
+			r.number(of[i].Score).number(of[i].Excess).number(of[i].P).number(of[i].FalseDiscovery)
+		})
+	}
+	return err
+}
+
+func (c *collection) summary(w io.Writer) {
+	names := c.matrix.Names
+	fmt.Fprintf(w, "samples   %s\n", several(len(names), "sample"))
+	_, axes := c.plane.Coordinates.Dims()
+	fmt.Fprintf(w, "map       the first %d axes keep %s of what a flat map can show of the squared distances\n", axes, percent(c.plane.Kept))
+	fmt.Fprintf(w, "tree      %s linkage, correlation of its heights with the distances %s\n", c.flags.linkage, human(c.tree.CopheneticCorrelation(c.matrix)))
+	size := make([]int, len(c.clusters.Medoids))
+	for _, l := range c.clusters.Label {
+		size[l]++
+	}
+	fmt.Fprintf(w, "clusters  %d around their medoids, mean silhouette %s\n", len(size), human(c.clusters.Mean))
+	for k, m := range c.clusters.Medoids {
+		fmt.Fprintf(w, "          %s around %s\n", several(size[k], "sample"), names[m])
+	}
+	far := slices.Clone(c.outliers)
+	slices.SortStableFunc(far, func(a, b inference.Outlier) int {
+		switch {
+		case a.Excess > b.Excess:
+			return -1
+		case a.Excess < b.Excess:
+			return 1
+		}
+		return 0
+	})
+	o := far[0]
+	fmt.Fprintf(w, "farthest  %s, whose neighbour number %d is %s times as far as that of the middle sample\n", names[o.Sample], c.flags.neighbours, human(o.Excess))
+}
