@@ -14,9 +14,10 @@ import (
 type Estimator struct {
 	terms  *Terms
 	parts  []Scale     // of the vector, all of weight 1
-	scales []int       // term of each of the first parts
-	weight [][]float32 // of the nodes of each of these
-	flows  []weighted  // the parts that follow
+	scales []int       // scale of each of the first parts
+	levels []int       // level of each of the parts that follow
+	weight [][]float32 // of the nodes of each of all these
+	flows  []weighted  // the parts after them
 }
 
 // weighted is a flow with the weight of each edge that has one.
@@ -50,6 +51,19 @@ func (t *Terms) Weigh(weights []float64) (*Estimator, error) {
 		e.scales, e.weight = append(e.scales, k), append(e.weight, w)
 	}
 	first := len(t.reach)
+	if t.levels != nil {
+		for k, size := range t.levels.size {
+			if weight := weights[first+k]; weight > 0 {
+				w := make([]float32, len(size))
+				for a, s := range size {
+					w[a] = float32(weight * float64(s))
+				}
+				add(t.names[first+k], len(w))
+				e.levels, e.weight = append(e.levels, k), append(e.weight, w)
+			}
+		}
+		first += len(t.levels.parent)
+	}
 	for i, f := range t.flows {
 		group := weights[first : first+t.groups]
 		first += t.groups
@@ -103,6 +117,9 @@ func (e *Estimator) EmbedRows(ctx context.Context, samples *graphio.Samples, row
 	if len(e.scales) > 0 {
 		stages++
 	}
+	if len(e.levels) > 0 {
+		stages++
+	}
 	staged := func(now, _ int) {
 		if progress != nil {
 			progress((done*n+now)/stages, n)
@@ -112,8 +129,12 @@ func (e *Estimator) EmbedRows(ctx context.Context, samples *graphio.Samples, row
 		e.embedScales(ctx, samples, row, threads, staged)
 		done++
 	}
+	if len(e.levels) > 0 {
+		e.embedLevels(ctx, samples, row, threads, staged)
+		done++
+	}
 	for i, part := range e.flows {
-		place := e.parts[len(e.scales)+i]
+		place := e.parts[len(e.weight)+i]
 		part.flow.eachRow(ctx, n, samples.At, threads, staged, func(i int, cost []float32) {
 			to := row(i)[place.Begin:place.End]
 			for k, edge := range part.edge {
@@ -123,6 +144,28 @@ func (e *Estimator) EmbedRows(ctx context.Context, samples *graphio.Samples, row
 		done++
 	}
 	return ctx.Err()
+}
+
+func (e *Estimator) embedLevels(ctx context.Context, samples *graphio.Samples, row func(i int) []float32, threads int, progress func(done, total int)) {
+	part := make(map[int]int, len(e.levels)) // of each level
+	for i, k := range e.levels {
+		part[k] = len(e.scales) + i
+	}
+	each(ctx, samples.Len(), 1, threads, progress, func() func(i, count int) {
+		var held [2][]float64
+		return func(i, _ int) {
+			e.terms.levels.masses(samples.At(i), &held, func(k int, mass []float64) {
+				at, ok := part[k]
+				if !ok {
+					return
+				}
+				to := row(i)[e.parts[at].Begin:e.parts[at].End]
+				for a, w := range e.weight[at] {
+					to[a] = w * float32(mass[a])
+				}
+			})
+		}
+	})
 }
 
 func (e *Estimator) embedScales(ctx context.Context, samples *graphio.Samples, row func(i int) []float32, threads int, progress func(done, total int)) {

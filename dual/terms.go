@@ -24,6 +24,7 @@ import (
 // between main roads and side streets.
 type Terms struct {
 	net    *graphio.Network
+	levels *Levels     // nil: none
 	scales *Multiscale // nil: none
 	reach  [][]float32 // of the nodes of each scale
 	flows  []*Flow
@@ -36,6 +37,8 @@ type Terms struct {
 type TermOptions struct {
 	Options
 	NoScales bool
+	// Levels adds a term for each level of a hierarchy.
+	Levels *Levels
 	// Flows lists the conductances of each flow; nil stands for 1/length.
 	Flows [][]float64
 	// Use of each edge, by which it is sorted into one of Groups groups of as
@@ -47,7 +50,7 @@ type TermOptions struct {
 
 // NewTerms prepares the terms for a network. Errors: options out of range.
 func NewTerms(net *graphio.Network, opt TermOptions) (*Terms, error) {
-	t := &Terms{net: net, groups: max(1, opt.Groups)}
+	t := &Terms{net: net, groups: max(1, opt.Groups), levels: opt.Levels}
 	if t.groups > 255 {
 		return nil, fmt.Errorf("dual: %d groups of edges; want at most 255", t.groups)
 	}
@@ -59,6 +62,11 @@ func NewTerms(net *graphio.Network, opt TermOptions) (*Terms, error) {
 		t.setReach()
 		for _, s := range t.scales.scales {
 			t.names = append(t.names, "scale "+s.Name)
+		}
+	}
+	if t.levels != nil {
+		for k := range t.levels.parent {
+			t.names = append(t.names, fmt.Sprintf("level %d", k))
 		}
 	}
 	for i, c := range opt.Flows {
@@ -148,6 +156,9 @@ func (t *Terms) MostWidth() int {
 	if t.scales != nil {
 		width = t.scales.Width()
 	}
+	if t.levels != nil {
+		width += t.levels.width
+	}
 	for _, f := range t.flows {
 		width += f.Width()
 	}
@@ -168,11 +179,30 @@ func (t *Terms) Of(ctx context.Context, pairs []Pair, threads int) ([][]float64,
 		t.scalesOf(ctx, differences, values, threads)
 		first = len(t.scales.scales)
 	}
+	if t.levels != nil {
+		t.levelsOf(ctx, differences, values, first, threads)
+		first += len(t.levels.parent)
+	}
 	for _, f := range t.flows {
 		f.termsOf(ctx, differences, t.group, threads, func(i int) []float64 { return values[i][first : first+t.groups] })
 		first += t.groups
 	}
 	return values, ctx.Err()
+}
+
+func (t *Terms) levelsOf(ctx context.Context, differences []graphio.Sample, values [][]float64, first, threads int) {
+	each(ctx, len(differences), 1, threads, nil, func() func(i, count int) {
+		var held [2][]float64
+		return func(i, _ int) {
+			t.levels.masses(differences[i], &held, func(k int, mass []float64) {
+				sum := 0.0
+				for a, m := range mass {
+					sum += math.Abs(float64(t.levels.size[k][a]) * m)
+				}
+				values[i][first+k] = sum
+			})
+		}
+	})
 }
 
 func (t *Terms) scalesOf(ctx context.Context, differences []graphio.Sample, values [][]float64, threads int) {

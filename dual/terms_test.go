@@ -7,6 +7,7 @@ import (
 	"slices"
 	"testing"
 
+	"example.org/barrow/diffusion"
 	"example.org/barrow/graphio"
 	"example.org/barrow/graphio/graphiotest"
 )
@@ -20,7 +21,11 @@ func someTerms(t *testing.T, net *graphio.Network) *Terms {
 		use[e] = rng.Float64()
 		conductance[e] = (0.01 + use[e]) / net.EdgeList()[e].Length
 	}
-	terms, err := NewTerms(net, TermOptions{Flows: [][]float64{nil, conductance}, Use: use, Groups: 3})
+	_, _, levels, err := HierarchyTree(net)
+	if err != nil {
+		t.Fatal(err)
+	}
+	terms, err := NewTerms(net, TermOptions{Levels: levels, Flows: [][]float64{nil, conductance}, Use: use, Groups: 3})
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -163,5 +168,31 @@ func TestTaxi(t *testing.T) {
 		if fast != plain {
 			t.Errorf("length %d: %v in assembly, %v plain", n, fast, plain)
 		}
+	}
+}
+
+// The terms of the levels by hand: on a path of four nodes, lengths 1, 4 and 2,
+// the ends join first, then the middle. A unit from the first to the last node
+// differs by 1 in both nodes, of size 1 and 2, and in both pairs, of size the
+// mean of all lengths, 7/3.
+func TestLevels(t *testing.T) {
+	list := []graphio.Edge{{From: 0, To: 1, Length: 1, Weight: 1}, {From: 1, To: 2, Length: 4, Weight: 0.25}, {From: 2, To: 3, Length: 2, Weight: 0.5}}
+	net := network(t, 4, list...)
+	h := diffusion.NewHierarchy(diffusion.NewWalk(net))
+	if h.Levels() != 1 {
+		t.Fatalf("%d levels of four nodes", h.Levels())
+	}
+	levels := &Levels{parent: [][]int32{{0, 0, 1, 1}, {0, 0}}}
+	levels.setSizes([]graphio.Edge{list[0], list[2], list[1]}, []float64{1, 1, 2})
+	terms, err := NewTerms(net, TermOptions{NoScales: true, Levels: levels})
+	if err != nil {
+		t.Fatal(err)
+	}
+	got, err := terms.Of(context.Background(), []Pair{{graphiotest.Point(0), graphiotest.Point(3)}}, 0)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if want := []float64{3, 14. / 3}; math.Abs(got[0][0]-want[0]) > 1e-6 || math.Abs(got[0][1]-want[1]) > 1e-6 {
+		t.Errorf("terms %v, by hand %v", got[0], want)
 	}
 }

@@ -89,10 +89,11 @@ func (e *slackening) EmbedRows(ctx context.Context, samples *graphio.Samples, ro
 	return err
 }
 
-// Hierarchy estimates every pair on a spanning tree that follows the coarsening
-// hierarchy (dual.HierarchyTree): the cheapest method that knows lengths. With
-// Options.Calibrate the edges of each level get a weight of their own, fitted to
-// random pairs solved exactly. Without it, and on networks that are trees or
+// Hierarchy estimates every pair by the masses in the aggregates of the
+// coarsening hierarchy, level by level (dual.Levels), and on a spanning tree that
+// follows it (dual.HierarchyTree): the cheapest method that knows lengths, with
+// weights for the levels fitted to random pairs solved exactly
+// (Options.Calibrate). Without calibration, and on networks that are trees or
 // forests themselves, Value is the distance along the tree: exact there up to
 // rounding, and an upper bound elsewhere.
 //
@@ -102,7 +103,7 @@ func Hierarchy(ctx context.Context, net *graphio.Network, samples *graphio.Sampl
 	if err != nil {
 		return nil, err
 	}
-	tree, level, err := dual.HierarchyTree(net)
+	tree, level, levels, err := dual.HierarchyTree(net)
 	if err != nil {
 		return nil, err
 	}
@@ -121,7 +122,7 @@ func Hierarchy(ctx context.Context, net *graphio.Network, samples *graphio.Sampl
 		if err := opt.afford(solverPart(net, opt.threads()), termPart(net, opt.threads())); err != nil {
 			return err
 		}
-		terms, err = dual.NewTerms(tree, dual.TermOptions{NoScales: true, Flows: [][]float64{nil}, Use: level, Groups: 8, Unmatched: opt.Unmatched})
+		terms, err = dual.NewTerms(tree, dual.TermOptions{NoScales: true, Levels: levels, Flows: [][]float64{nil}, Use: level, Groups: 8, Unmatched: opt.Unmatched})
 		if err != nil {
 			return err
 		}
