@@ -27,11 +27,12 @@ import (
 func main() {
 	sets := pflag.Int("sets", 1000, "of data without effect, for every design")
 	only := pflag.StringSlice("only", []string{"levels", "power", "speed"}, "which tables")
+	picture := pflag.String("picture", "", "file for the power curves, .svg or .png")
 	pflag.Parse()
 	for _, t := range []struct {
 		name string
 		run  func() error
-	}{{"levels", func() error { return levels(*sets) }}, {"power", power}, {"speed", speed}} {
+	}{{"levels", func() error { return levels(*sets) }}, {"power", func() error { return power(*picture) }}, {"speed", speed}} {
 		if !slices.Contains(*only, t.name) {
 			continue
 		}

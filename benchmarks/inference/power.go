@@ -3,9 +3,15 @@ package main
 import (
 	"context"
 	"fmt"
+	"image/color"
 	"math"
 	"math/rand/v2"
 	"slices"
+
+	"gonum.org/v1/plot"
+	"gonum.org/v1/plot/plotter"
+	"gonum.org/v1/plot/vg"
+	glyph "gonum.org/v1/plot/vg/draw"
 
 	"example.org/barrow/dual"
 	"example.org/barrow/dual/inference"
@@ -41,7 +47,7 @@ func randomMatrix(n int) *pairwise.Matrix {
 // power counts how often a planted shift between two groups of samples is
 // called at 5 %: counts at the nodes about a place, which in the second group
 // lies some way off.
-func power() error {
+func power(picture string) error {
 	const nodes, each, counts, sets = 900, 10, 60, 200
 	net := graphiotest.Road(nodes, 5)
 	estimate, err := theory(net)
@@ -55,7 +61,8 @@ func power() error {
 	for _, e := range net.EdgeList() {
 		mean += e.Length / float64(net.Size())
 	}
-	for _, apart := range []float64{0, 0.5, 1, 2, 4, 8} {
+	curves := make([]plotter.XYs, 4)
+	for _, apart := range []float64{0, 0.25, 0.5, 1, 1.5, 2, 3, 4, 6, 8} {
 		var called [4]int
 		for set := range sets {
 			p, err := shifted(net, estimate, apart*mean, each, counts, uint64(set))
@@ -69,8 +76,41 @@ func power() error {
 			}
 		}
 		fmt.Printf("| %v | %d %% | %d %% | %d %% | %d %% |\n", apart, called[0]*100/sets, called[1]*100/sets, called[2]*100/sets, called[3]*100/sets)
+		for k := range curves {
+			curves[k] = append(curves[k], plotter.XY{X: apart, Y: float64(called[k]) / float64(sets) * 100})
+		}
 	}
-	return nil
+	if picture == "" {
+		return nil
+	}
+	return draw(curves, picture)
+}
+
+// draw shows the curves.
+func draw(curves []plotter.XYs, path string) error {
+	p := plot.New()
+	p.Title.Text = "How often a shift is called at 5 %"
+	p.X.Label.Text = "the places lie apart, in mean edges"
+	p.Y.Label.Text = "called, %"
+	p.Y.Min, p.Y.Max = 0, 100
+	p.Legend.Padding = vg.Points(3)
+	names := []string{"energy, multiscale distances", "energy, total variation", "node by node, max-T", "districts, max-T"}
+	colours := []color.Color{color.RGBA{0, 90, 160, 255}, color.RGBA{200, 95, 0, 255}, color.RGBA{90, 90, 90, 255}, color.RGBA{0, 130, 90, 255}}
+	for k, xy := range curves {
+		line, points, err := plotter.NewLinePoints(xy)
+		if err != nil {
+			return err
+		}
+		line.Color, points.Color = colours[k], colours[k]
+		line.Width = vg.Points(1.2)
+		if k > 0 {
+			line.Dashes = []vg.Length{vg.Points(float64(7 - 2*k)), vg.Points(2)}
+		}
+		points.Shape = []glyph.GlyphDrawer{glyph.CircleGlyph{}, glyph.SquareGlyph{}, glyph.TriangleGlyph{}, glyph.CrossGlyph{}}[k]
+		p.Add(line, points)
+		p.Legend.Add(names[k], line, points)
+	}
+	return p.Save(14*vg.Centimeter, 9*vg.Centimeter, path)
 }
 
 func theory(net *graphio.Network) (*dual.Estimator, error) {

@@ -32,6 +32,7 @@ type settings struct {
 	timeLimit               time.Duration
 	test                    testFlags
 	noise                   noiseFlags
+	noisy                   bool // matrix --noise
 
 	seed    uint64
 	threads int

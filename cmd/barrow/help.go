@@ -119,6 +119,9 @@ Method
                         distance of two is the estimate, for your own index or
                         classifier. Estimates then leave out the term of the
                         proofs, which is no L1 distance, and are a little worse
+  --noise               also what counting noise makes of every pair: columns
+                        floor, excess and p of pairs.csv, see barrow help noise;
+                        --draws N and --dispersion X as there
   --seed N              of the choice of those pairs; 1 by default
 ` + comparisonHelp + runHelp + holdHelp + replayHelp + `
 Results
@@ -280,6 +283,10 @@ Shape
   --clusters N          around medoids; 0, the default, takes the number up to ten
                         whose silhouette is best (Rousseeuw 1987)
   --neighbours K        samples apart are those far from their K nearest; 3
+  --groups FILE         sample, and any columns, for --ordinary
+  --ordinary COL=LABEL  samples with this label are known to be ordinary: others
+                        are tested against them (conformal P) and called apart
+                        with at most --level (0.05) false among the called
   --method NAME         how distances are made, see barrow help matrix
   --calibrate N|auto    pairs solved exactly for multiscale
   --seed N              another choice of those pairs; 1 by default

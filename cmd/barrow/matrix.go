@@ -32,6 +32,9 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	set.flags.StringVar(&set.stored, "calibration", "", "")
 	set.flags.BoolVar(&set.vectors, "vectors", false, "")
 	set.flags.StringVar(&set.hold, "hold", "auto", "")
+	set.flags.BoolVar(&set.noisy, "noise", false, "")
+	set.flags.IntVar(&set.noise.draws, "draws", 199, "")
+	set.flags.StringVar(&set.noise.dispersion, "dispersion", "1", "")
 	set.flags.Uint64Var(&set.seed, "seed", 1, "")
 	set.running()
 	set.results("results")
@@ -45,6 +48,11 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	}
 	if len(rest) > 0 {
 		return nil, nil, usageError{fmt.Sprintf("%q, where only flags are taken; barrow pair A B compares two samples", rest[0])}
+	}
+	if set.noisy {
+		if err := set.noise.check(set); err != nil {
+			return nil, nil, err
+		}
 	}
 	s.progress.progressTo(s.stderr)
 	d, err := s.load(set)
@@ -101,15 +109,26 @@ func (s *session) measure(set *settings, d *data, recorded *record) (*pairwise.R
 		return nil, err
 	}
 	defer r.Vectors.Close()
+	var noise *noiseResult
+	if set.noisy {
+		if noise, err = s.count(set, d, rec); err != nil {
+			return nil, err
+		}
+	}
 	s.progress.end()
 	rec.Counts["pairs"] = pairCount(d)
 	rec.Choices = choicesOf(r)
 	s.cautions(rec, d, set, r)
-	err = s.phases.Time("write", func() error { return f.writeMatrices(d, set, r) })
+	err = s.phases.Time("write", func() error { return f.writeMatrices(d, set, r, noise) })
 	if err != nil {
 		return nil, err
 	}
-	if err := s.close(f, rec, recorded, func(w io.Writer) { summary(w, set, d, r) }); err != nil {
+	if err := s.close(f, rec, recorded, func(w io.Writer) {
+		summary(w, set, d, r)
+		if noise != nil {
+			noise.pairsLine(w)
+		}
+	}); err != nil {
 		return nil, err
 	}
 	return r, nil
@@ -167,11 +186,11 @@ func (s *session) offerExact(d *data, r *pairwise.Result) {
 	}
 }
 
-func (f *folder) writeMatrices(d *data, set *settings, r *pairwise.Result) error {
+func (f *folder) writeMatrices(d *data, set *settings, r *pairwise.Result, noise *noiseResult) error {
 	err := f.write("matrix.csv", func(w *bufio.Writer) error { return writeMatrix(w, r.Matrix) })
 	if err == nil {
 		err = f.write("pairs.csv", func(w *bufio.Writer) error {
-			return writePairs(w, r.Matrix, set.method, d.net.Directed())
+			return writePairs(w, r.Matrix, set.method, d.net.Directed(), noise)
 		})
 	}
 	if err == nil && r.Calibration != nil {

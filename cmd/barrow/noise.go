@@ -29,7 +29,7 @@ func (n *noiseFlags) check(set *settings) error {
 			return usageError{fmt.Sprintf("--dispersion %q; want a number above 0, 1 for plain counts, or auto with --groups FILE --replicates COLUMN", n.dispersion)}
 		}
 	} else if set.groups == "" || n.replicates == "" {
-		return usageError{"--dispersion auto without replicates; want --groups FILE --replicates COLUMN, with one label for samples of one source"}
+		return usageError{"--dispersion auto without replicates; want --groups FILE --replicates COLUMN (barrow noise has them), with one label for samples of one source"}
 	}
 	if set.mass == "amount" && set.unmatched == 0 {
 		return usageError{"--mass amount without --unmatched; want a cost of unmatched mass, as noise changes totals"}
@@ -212,23 +212,13 @@ func (n *noiseResult) write(f *folder, set *settings) error {
 func (n *noiseResult) summary(w io.Writer, set *settings, d *data) {
 	fmt.Fprintf(w, "network   %s\n", networkLine(d.net))
 	fmt.Fprintf(w, "samples   %s\n", samplesLine(d.samples))
-	fmt.Fprintf(w, "noise     %s of every sample at random, each compared as the samples are; dispersion %s\n", several(n.Draws, "halving"), human(n.dispersion))
+	fmt.Fprintf(w, "drawn     %s of every sample at random, each compared as the samples are; dispersion %s\n", several(n.Draws, "halving"), human(n.dispersion))
 	floors, distances := slices.Clone(n.Floor.Value), slices.Clone(n.Distance.Value)
 	slices.Sort(floors)
 	slices.Sort(distances)
 	fmt.Fprintf(w, "floor     %s to %s, median %s: what counting alone makes of a distance, on average\n", human(floors[0]), human(floors[len(floors)-1]), human(median(floors)))
 	fmt.Fprintf(w, "distance  %s to %s, median %s, in the unit of your edge lengths\n", human(distances[0]), human(distances[len(distances)-1]), human(median(distances)))
-	alone, adjusted := 0, 0
-	for k, p := range n.P {
-		if p <= 0.05 {
-			alone++
-		}
-		if n.adjusted[k] <= 0.05 {
-			adjusted++
-		}
-	}
-	fmt.Fprintf(w, "pairs     %s of %s differ by more than noise at 5 %%, each by itself; %s with at most 5 %% false among them\n",
-		count(alone), several(len(n.P), "pair"), count(adjusted))
+	n.pairsLine(w)
 	if set.noise.shift > 0 {
 		needed := make([]float64, len(n.Counts))
 		for i := range needed {
@@ -238,4 +228,23 @@ func (n *noiseResult) summary(w io.Writer, set *settings, d *data) {
 		fmt.Fprintf(w, "counts    a shift of %s stands out of the noise of samples of %s counts or more (median; %s to %s by sample)\n",
 			human(set.noise.shift), human(median(needed)), human(needed[0]), human(needed[len(needed)-1]))
 	}
+}
+
+// pairsLine counts the pairs that are more than noise.
+func (n *noiseResult) pairsLine(w io.Writer) {
+	alone, adjusted := 0, 0
+	for k, p := range n.P {
+		if p <= 0.05 {
+			alone++
+		}
+		if n.adjusted[k] <= 0.05 {
+			adjusted++
+		}
+	}
+	more := ""
+	if adjusted == 0 && alone > 0 {
+		more = " (more --draws may tell)"
+	}
+	fmt.Fprintf(w, "noise     %s of %s differ by more than counting noise at 5 %%, each by itself; %s with at most 5 %% false among them%s\n",
+		count(alone), several(len(n.P), "pair"), count(adjusted), more)
 }

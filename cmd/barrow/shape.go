@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"io"
 	"slices"
+	"strings"
 
 	"example.org/barrow/dual/inference"
 	"example.org/barrow/dual/pairwise"
@@ -12,8 +13,9 @@ import (
 
 // shapeFlags are those of barrow shape alone.
 type shapeFlags struct {
-	linkage                    string
+	linkage, ordinary          string
 	clusters, axes, neighbours int
+	level                      float64
 }
 
 var linkages = map[string]inference.Linkage{
@@ -32,6 +34,9 @@ func (s *session) shape(args []string) error {
 	set.flags.IntVar(&sh.clusters, "clusters", 0, "")
 	set.flags.IntVar(&sh.axes, "axes", 2, "")
 	set.flags.IntVar(&sh.neighbours, "neighbours", 3, "")
+	set.flags.StringVar(&set.groups, "groups", "", "")
+	set.flags.StringVar(&sh.ordinary, "ordinary", "", "")
+	set.flags.Float64Var(&sh.level, "level", 0.05, "")
 	set.flags.Uint64Var(&set.seed, "seed", 1, "")
 	set.running()
 	set.results("shape")
@@ -72,6 +77,9 @@ func (s *session) shape(args []string) error {
 		}
 	}
 	c := &collection{matrix: m, flags: sh}
+	if c.reference, err = sh.reference(d, m.Names); err != nil {
+		return err
+	}
 	if err := s.phases.Time("shape", c.find); err != nil {
 		return err
 	}
@@ -90,6 +98,33 @@ type collection struct {
 	tree     *inference.Tree
 	clusters *inference.Clusters
 	outliers []inference.Outlier
+
+	reference []int // samples known to be ordinary; nil where none are
+}
+
+// reference is the samples with the label of --ordinary COLUMN=LABEL.
+func (sh shapeFlags) reference(d *data, names []string) ([]int, error) {
+	if sh.ordinary == "" {
+		return nil, nil
+	}
+	column, label, ok := strings.Cut(sh.ordinary, "=")
+	if !ok || d.groups == nil {
+		return nil, usageError{fmt.Sprintf("--ordinary %q; want COLUMN=LABEL, with --groups FILE", sh.ordinary)}
+	}
+	v, err := inference.Column(d.groups, column, names)
+	if err != nil {
+		return nil, err
+	}
+	var list []int
+	for i, l := range v.Labels {
+		if l == label {
+			list = append(list, i)
+		}
+	}
+	if len(list) == 0 || len(list) == len(names) {
+		return nil, usageError{fmt.Sprintf("--ordinary %s holds for %d of %d samples; want some that are ordinary and some to be tested", sh.ordinary, len(list), len(names))}
+	}
+	return list, nil
 }
 
 func (c *collection) find() (err error) {
@@ -102,8 +137,11 @@ func (c *collection) find() (err error) {
 	if err := c.divide(); err != nil {
 		return err
 	}
-	n := len(c.matrix.Names)
-	c.outliers, err = inference.Outliers(c.matrix, min(c.flags.neighbours, n-2), 1, nil)
+	level, among := 1.0, len(c.matrix.Names)
+	if c.reference != nil {
+		level, among = c.flags.level, len(c.reference)+1
+	}
+	c.outliers, err = inference.Outliers(c.matrix, min(c.flags.neighbours, among-2), level, c.reference)
 	return err
 }
 
@@ -170,6 +208,10 @@ func (c *collection) write(f *folder) error {
 			of[o.Sample] = o
 		}
 		err = table("outliers.csv", "sample,score,excess,p,false_discovery", func(r *row, i int) {
+			if of[i].Score == 0 && c.reference != nil { // ordinary, not tested
+				r.text("").text("").text("").text("")
+				return
+			}
 			r.number(of[i].Score).number(of[i].Excess).number(of[i].P).number(of[i].FalseDiscovery)
 		})
 	}
@@ -200,6 +242,21 @@ func (c *collection) summary(w io.Writer) {
 		}
 		return 0
 	})
+	if c.reference != nil {
+		var called []string
+		for _, o := range far {
+			if o.FalseDiscovery <= c.flags.level {
+				called = append(called, names[o.Sample])
+			}
+		}
+		list := ""
+		if len(called) > 0 {
+			list = ": " + shortened(called)
+		}
+		fmt.Fprintf(w, "apart     %s of %d tested against %d ordinary ones, with at most %s false among them%s\n",
+			several(len(called), "sample"), len(c.outliers), len(c.reference), percent(c.flags.level), list)
+		return
+	}
 	o := far[0]
 	fmt.Fprintf(w, "farthest  %s, whose neighbour number %d is %s times as far as that of the middle sample\n", names[o.Sample], c.flags.neighbours, human(o.Excess))
 }

@@ -77,11 +77,15 @@ func writeMatrix(w *bufio.Writer, m *pairwise.Matrix) error {
 }
 
 // writePairs writes pairs.csv, each pair in both orders where the network is
-// one-way.
-func writePairs(w *bufio.Writer, m *pairwise.Matrix, method string, both bool) error {
+// one-way, and what is noise of it where that is known.
+func writePairs(w *bufio.Writer, m *pairwise.Matrix, method string, both bool, noise *noiseResult) error {
 	names := quoted(m.Names)
 	r := &row{w: w}
-	if err := r.text("a,b,distance,lower,upper,method").end(); err != nil {
+	r.text("a,b,distance,lower,upper,method")
+	if noise != nil {
+		r.text("floor,excess,p")
+	}
+	if err := r.end(); err != nil {
 		return err
 	}
 	for i := range names {
@@ -91,6 +95,11 @@ func writePairs(w *bufio.Writer, m *pairwise.Matrix, method string, both bool) e
 			}
 			lower, upper, _ := m.Bounds(i, j)
 			r.text(names[i]).text(names[j]).number(m.At(i, j)).number(lower).number(upper).text(method)
+			if noise != nil {
+				k := noise.Distance.Index(min(i, j), max(i, j))
+				floor := noise.Floor.Value[k]
+				r.number(floor).number(m.At(i, j) - floor).number(noise.P[k])
+			}
 			if err := r.end(); err != nil {
 				return err
 			}
