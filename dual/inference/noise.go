@@ -92,12 +92,16 @@ func Floor(ctx context.Context, e *dual.Estimator, samples *graphio.Samples, opt
 	replicates := make([][]float64, n)
 	var before []float32
 	for draw := range draws {
-		noise, err := e.Embed(ctx, halves(samples, opt, uint64(draw)), opt.Threads, nil)
+		half, rest := halves(samples, opt, uint64(draw))
+		noise, err := e.Embed(ctx, half, opt.Threads, nil)
 		if err != nil {
 			return nil, err
 		}
-		for k, x := range noise.Vectors {
-			noise.Vectors[k] = float32(scale) * (x - own.Vectors[k])
+		for i := range n {
+			row, whole := noise.Row(i), own.Row(i)
+			for k, x := range row {
+				row[k] = float32(scale) * (x - rest[i]*whole[k])
+			}
 		}
 		d, err := pairwise.Compare(ctx, samples.Names(), noise, many)
 		if err != nil {
@@ -155,30 +159,42 @@ func (opt NoiseOptions) check(samples *graphio.Samples) (draws int, scale float6
 			return 0, 0, fmt.Errorf("%w: sample %q has masses that are no whole numbers, or too many; counting noise is that of counts: want samples of counts, not of shares or rates", ErrCounts, s.Name)
 		}
 	}
+	for i := range samples.Len() {
+		if s := samples.At(i); opt.Shares && s.Total() < 2 {
+			return 0, 0, fmt.Errorf("%w: sample %q has %v counts in all, which says nothing of its noise; want two or more", ErrCounts, s.Name, s.Total())
+		}
+	}
 	return draws, scale, nil
 }
 
-// halves is twice a random half of each sample, in the unit compared. A sample
-// has a random stream of its own for each draw.
-func halves(samples *graphio.Samples, opt NoiseOptions, draw uint64) *graphio.Samples {
+// halves is a random half A of each sample X, so weighted that less rest times
+// the sample, in the unit compared, it is noise. Amounts: 2A − X. Shares, with a
+// counts in A and b left: √(ab)/n (A/a − (X − A)/b), which has no net mass, also
+// where n is odd, and the covariance of X/n. A sample has a random stream of its
+// own for each draw.
+func halves(samples *graphio.Samples, opt NoiseOptions, draw uint64) (weighted *graphio.Samples, rest []float32) {
 	list := make([]graphio.Sample, samples.Len())
+	rest = make([]float32, len(list))
 	for i := range list {
 		s := samples.At(i)
 		r := rand.New(rand.NewPCG(opt.Seed^0x6e6f697365, draw<<24^uint64(i)))
-		unit := 2.0
-		if opt.Shares {
-			unit /= s.Total()
-		}
 		list[i] = half(s, opt.Shares, r)
+		unit := 2.0
+		rest[i] = 1
+		if opt.Shares {
+			a := list[i].Total()
+			b := s.Total() - a
+			unit, rest[i] = 1/math.Sqrt(a*b), float32(math.Sqrt(a/b))
+		}
 		for k := range list[i].Values {
 			list[i].Values[k] *= unit
 		}
 	}
-	h, err := graphio.NewSamples(samples.Order(), list)
+	weighted, err := graphio.NewSamples(samples.Order(), list)
 	if err != nil {
 		panic(err) // cannot be: parts of samples that are
 	}
-	return h
+	return weighted, rest
 }
 
 // half draws half of a sample's counts: exactly so many where balanced, an odd

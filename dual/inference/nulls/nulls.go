@@ -8,11 +8,15 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"sync"
 
 	"gonum.org/v1/gonum/mat"
 
+	"example.org/barrow/dual"
 	"example.org/barrow/dual/inference"
 	"example.org/barrow/dual/pairwise"
+	"example.org/barrow/graphio"
+	"example.org/barrow/graphio/graphiotest"
 )
 
 // A Design is a test on one kind of data.
@@ -266,7 +270,51 @@ func Designs() []Design {
 	add("all rearrangements of 4 and 4", true, func(r *rand.Rand, o inference.Options) (float64, error) {
 		return p(inference.PseudoF(ctx, distances(points(r, 8), false), factor("g", 4, 4), inference.Scheme{}, o))
 	})
+	for _, totals := range [][2]int{{25, 25}, {600, 600}, {60, 240}} {
+		add(fmt.Sprintf("noise, %d and %d counts", totals[0], totals[1]), false, func(r *rand.Rand, o inference.Options) (float64, error) {
+			return noiseP(r, o, totals)
+		})
+	}
 	return list
+}
+
+// street is a small network and what embeds samples on it, made once.
+var street = sync.OnceValues(func() (*graphio.Network, *dual.Estimator) {
+	net := graphiotest.Road(30, 1)
+	terms, err := dual.NewTerms(net, dual.TermOptions{})
+	if err != nil {
+		panic(err) // cannot be: the network is a good one
+	}
+	weights := make([]float64, len(terms.Names()))
+	for k := range weights {
+		weights[k] = 1
+	}
+	e, err := terms.Weigh(weights)
+	if err != nil {
+		panic(err)
+	}
+	return net, e
+})
+
+// noiseP is the P of two samples of counts from one source.
+func noiseP(r *rand.Rand, o inference.Options, totals [2]int) (float64, error) {
+	net, e := street()
+	source := graphiotest.Smooth(net, r.Uint64())
+	var list []graphio.Sample
+	for k, total := range totals {
+		s := graphiotest.Counts(source, total, r.Uint64())
+		s.Name = fmt.Sprint(k)
+		list = append(list, s)
+	}
+	samples, err := graphio.NewSamples(net.Order(), list)
+	if err != nil {
+		return 0, err
+	}
+	n, err := inference.Floor(ctx, e, samples, inference.NoiseOptions{Shares: true, Draws: permutations, Seed: o.Seed, Threads: 1})
+	if err != nil {
+		return 0, err
+	}
+	return n.P[0], nil
 }
 
 // modelP is the P of one term of a model without effects.
