@@ -53,6 +53,7 @@ type Solver struct {
 	tree  tree
 	price pricing
 	lone  int32 // the one node the space was laid out around, -1 for the middle
+	fresh bool  // no pair since NewSolver or Reset
 
 	supply []int64   // by solver node
 	amount []float64 // the same in units of mass; nil where integers are exact
@@ -80,7 +81,7 @@ func NewSolver(net *graphio.Network, opt Options) (*Solver, error) {
 	case !(opt.Gap >= 0 && opt.Gap < 1):
 		return nil, fmt.Errorf("gap %v; want 0 or more and below 1", opt.Gap)
 	}
-	return &Solver{net: net, opt: opt, lone: noNode}, nil
+	return &Solver{net: net, opt: opt, lone: noNode, fresh: true}, nil
 }
 
 const noNode = -1
@@ -97,18 +98,20 @@ func (s *Solver) prepare(lone int32) {
 	s.price = newPricing(len(sp.edge))
 }
 
-// lay sees to it that the network is laid out. One that was laid out around the
-// lone node of the pairs before is so again for the first other pair.
+// lay sees to it that the network is laid out: around the lone node of the
+// first pair, if it has one, and around the middle from the first other pair on.
 func (s *Solver) lay(p, q graphio.Sample) {
 	lone := noNode
 	if l, _ := s.loneNode(p, q); l != noNode && !s.net.Directed() {
 		lone = int(l)
 	}
-	if s.space == nil {
+	switch {
+	case s.space == nil || s.fresh && s.lone != int32(lone):
 		s.prepare(int32(lone))
-	} else if s.lone != noNode && s.lone != int32(lone) {
+	case s.lone != noNode && s.lone != int32(lone):
 		s.prepare(noNode)
 	}
+	s.fresh = false
 }
 
 // loneNode is the one node that all mass goes to (sign 1) or comes from (-1).
@@ -126,6 +129,12 @@ func (s *Solver) loneNode(p, q graphio.Sample) (node int32, sign int64) {
 // Reset forgets the pairs before: the next solve starts as on a new Solver, and
 // so ends in the same tree, without the price of preparing the network again.
 func (s *Solver) Reset() {
+	s.regrow()
+	s.fresh = true
+}
+
+// regrow goes back to the first tree.
+func (s *Solver) regrow() {
 	if s.warm {
 		s.tree.grow(s.space.startEdge, s.space.startOrder)
 		s.sign, s.warm = 1, false
@@ -236,7 +245,7 @@ func (s *Solver) cost() float64 {
 // of shortest paths there, which is optimal.
 func (s *Solver) start(p, q graphio.Sample) {
 	if node, sign := s.loneNode(p, q); node != noNode {
-		s.Reset()
+		s.regrow()
 		if node != s.lone {
 			s.tree.grow(s.star(node, sign))
 		}
@@ -247,7 +256,7 @@ func (s *Solver) start(p, q graphio.Sample) {
 	}
 	s.load()
 	if s.warm && s.startCost() < s.cost() {
-		s.Reset()
+		s.regrow()
 		s.load()
 	}
 	s.warm = true

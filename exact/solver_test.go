@@ -295,6 +295,17 @@ func TestReset(t *testing.T) {
 	if again.Pivots != fresh.Pivots || !slices.Equal(again.Flow, fresh.Flow) || !slices.Equal(again.Potential, fresh.Potential) {
 		t.Errorf("%d pivots after Reset, %d on a new solver, or another result", again.Pivots, fresh.Pivots)
 	}
+	// Also where the first pair has all mass at one node, after others and before.
+	for _, next := range []graphio.Sample{graphiotest.Point(7), q, graphiotest.Point(700)} {
+		s.Reset()
+		again, err := s.Solve(context.Background(), p, next)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if fresh := solve(t, net, p, next, opt); again.Pivots != fresh.Pivots || !slices.Equal(again.Flow, fresh.Flow) || !slices.Equal(again.Potential, fresh.Potential) {
+			t.Errorf("%q: another result after Reset than on a new solver", next.Name)
+		}
+	}
 }
 
 // To one node and from one node the tree of shortest paths is optimal at once,
