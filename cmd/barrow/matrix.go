@@ -59,7 +59,7 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	if err != nil {
 		return nil, nil, err
 	}
-	if d.samples.Len() < 2 {
+	if d.samples.Len() < 2 && !(set.vectors && set.stored != "" && d.samples.Len() == 1) { // one more vector is welcome
 		return nil, nil, oneFault(set.samples, several(d.samples.Len(), "sample"), "two samples or more to compare")
 	}
 	r, err := s.measure(set, d, recorded)
@@ -256,6 +256,9 @@ func summary(w io.Writer, set *settings, d *data, r *pairwise.Result) {
 	fmt.Fprintf(w, "network   %s\n", networkLine(d.net))
 	fmt.Fprintf(w, "samples   %s; %s\n", samplesLine(d.samples), compared)
 	fmt.Fprintf(w, "method    %s\n", methodLine(set.method, r))
+	if pairCount(d) == 0 {
+		return
+	}
 	near, far, middle := extremes(r.Matrix)
 	for _, e := range []struct {
 		word string

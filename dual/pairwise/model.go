@@ -86,17 +86,26 @@ func ReadModel(r io.Reader) (*Model, error) {
 
 // fits refuses another network or another way of comparing.
 func (m *Model) fits(net *graphio.Network, opt Options) error {
-	switch {
-	case m.Network != fingerprint(net):
-		return fmt.Errorf("the calibration is for another network, of %d nodes and %d edges; this one has %d and %d, or other lengths or another order of them; want the network files it was made on", m.Nodes, m.Edges, net.Order(), net.Size())
-	case opt.KeepVectors && len(m.Witnesses) > 0:
-		return fmt.Errorf("the calibration has witnesses, so its estimates are no L1 distances of vectors; want one that was made with --vectors")
-	case m.Mass != massWord(opt.Shares):
-		return fmt.Errorf("the calibration compares %ss; want --mass %s", m.Mass, m.Mass)
-	case m.Unmatched != opt.Unmatched:
-		return fmt.Errorf("the calibration has a cost of unmatched mass of %v; want --unmatched %v", m.Unmatched, m.Unmatched)
+	var faults graphio.FaultList
+	if m.Network != fingerprint(net) {
+		faults.Add(graphio.Fault{
+			Found: fmt.Sprintf("a calibration for another network, of %d nodes and %d edges; this one has %d and %d, or other lengths, or its rows in another order", m.Nodes, m.Edges, net.Order(), net.Size()),
+			Want:  "the network files it was made on",
+		})
 	}
-	return nil
+	if opt.KeepVectors && len(m.Witnesses) > 0 {
+		faults.Add(graphio.Fault{
+			Found: "a calibration with a term of proofs, which is no L1 distance of vectors",
+			Want:  "one that was made with --vectors",
+		})
+	}
+	if m.Mass != massWord(opt.Shares) {
+		faults.Add(graphio.Fault{Found: fmt.Sprintf("a calibration that compares %ss", m.Mass), Want: "--mass " + m.Mass})
+	}
+	if m.Unmatched != opt.Unmatched {
+		faults.Add(graphio.Fault{Found: fmt.Sprintf("a calibration with a cost of unmatched mass of %v", m.Unmatched), Want: fmt.Sprintf("--unmatched %v", m.Unmatched)})
+	}
+	return faults.Err()
 }
 
 func massWord(shares bool) string {
