@@ -28,7 +28,7 @@ type settings struct {
 	method, mass, calibrate string
 	unmatched, gap          float64
 	stored, hold            string
-	vectors                 bool
+	vectors, unbiased       bool
 	timeLimit               time.Duration
 	test                    testFlags
 	noise                   noiseFlags
@@ -173,6 +173,9 @@ func (set *settings) checkVectors() error {
 	if set.vectors && !slices.Contains([]string{"multiscale", "flow", "hierarchy"}, set.method) {
 		return usageError{fmt.Sprintf("--vectors with --method %s; want multiscale, flow or hierarchy, whose distances are those of vectors", set.method)}
 	}
+	if set.unbiased && set.method != "kernel" {
+		return usageError{fmt.Sprintf("--unbiased with --method %s; want kernel", set.method)}
+	}
 	if set.stored != "" && set.method != "multiscale" {
 		return usageError{fmt.Sprintf("--calibration with --method %s; want multiscale, which is calibrated", set.method)}
 	}
@@ -240,7 +243,7 @@ func (s *session) options(set *settings) (pairwise.Options, error) {
 		if opt.Calibrate, err = set.calibration(); err != nil {
 			return opt, err
 		}
-		opt.KeepVectors = set.vectors
+		opt.KeepVectors, opt.Unbiased = set.vectors, set.unbiased
 		if set.hold != "auto" {
 			opt.Hold = set.hold
 		}

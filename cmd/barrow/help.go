@@ -122,6 +122,8 @@ Method
   --noise               also what counting noise makes of every pair: columns
                         floor, excess and p of pairs.csv, see barrow help noise;
                         --draws N and --dispersion X as there
+  --unbiased            of kernel: the square, without the bias that counting
+                        gives it; 0 on average for counts of one source
   --seed N              of the choice of those pairs; 1 by default
 ` + comparisonHelp + runHelp + holdHelp + replayHelp + `
 Results

@@ -31,6 +31,7 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	set.flags.StringVar(&set.calibrate, "calibrate", "auto", "")
 	set.flags.StringVar(&set.stored, "calibration", "", "")
 	set.flags.BoolVar(&set.vectors, "vectors", false, "")
+	set.flags.BoolVar(&set.unbiased, "unbiased", false, "")
 	set.flags.StringVar(&set.hold, "hold", "auto", "")
 	set.flags.BoolVar(&set.noisy, "noise", false, "")
 	set.flags.IntVar(&set.noise.draws, "draws", 199, "")
@@ -255,7 +256,7 @@ func summary(w io.Writer, set *settings, d *data, r *pairwise.Result) {
 	}
 	fmt.Fprintf(w, "network   %s\n", networkLine(d.net))
 	fmt.Fprintf(w, "samples   %s; %s\n", samplesLine(d.samples), compared)
-	fmt.Fprintf(w, "method    %s\n", methodLine(set.method, r))
+	fmt.Fprintf(w, "method    %s\n", methodLine(set, r))
 	if pairCount(d) == 0 {
 		return
 	}
@@ -270,11 +271,15 @@ func summary(w io.Writer, set *settings, d *data, r *pairwise.Result) {
 	fmt.Fprintf(w, "unit      %s\n", unitLine(set, r))
 }
 
-func methodLine(method string, r *pairwise.Result) string {
+func methodLine(set *settings, r *pairwise.Result) string {
+	method := set.method
 	switch method {
 	case "exact":
 		return "exact: every pair solved and its proof checked"
 	case "kernel":
+		if set.unbiased {
+			return "kernel: maximum mean discrepancy of counts under heat kernels, squared and unbiased"
+		}
 		return "kernel: maximum mean discrepancy under heat kernels"
 	case "variation":
 		return "variation: half the sum of node-by-node differences, blind to where nodes lie"
@@ -310,6 +315,8 @@ func qualityLine(q *pairwise.Quality) string {
 
 func unitLine(set *settings, r *pairwise.Result) string {
 	switch {
+	case set.method == "kernel" && set.unbiased:
+		return "none; 0 on average, and below as often, for counts of one source"
 	case set.method == "kernel":
 		return "none; 0 for equal shares"
 	case set.method == "variation" && set.mass == "share":

@@ -151,7 +151,7 @@ func TestSolve(t *testing.T) {
 				all++
 			}
 		}
-		if ratio := math.Sqrt(left / all); ratio > 1e-5 {
+		if ratio := math.Sqrt(left / all); ratio > 10*aim {
 			t.Errorf("%s: residual of %.2g after %d steps", name, ratio, c.steps)
 		}
 	}

@@ -41,7 +41,7 @@ func newLaplacian(f *factor) *laplacian {
 }
 
 const (
-	aim       = 1e-5 // of the error left, relative, in the norm of the energy
+	aim       = 3e-3 // of the error left, relative, in the norm of the energy
 	mostSteps = 200
 )
 
@@ -128,7 +128,7 @@ func (c *Circuit) measure() {
 				p.r[i][l] -= y[l]
 			}
 		})
-		if c.energy(&p) < 100*aim*before || c.steps == mostSteps {
+		if c.energy(&p) < 10*aim*before || c.steps == mostSteps {
 			return
 		}
 	}

@@ -138,3 +138,32 @@ func TestAwkward(t *testing.T) {
 		t.Errorf("one sample: %v, %v", r, err)
 	}
 }
+
+// Counts of one source are 0 apart on average by the unbiased kernel, and
+// counts of two are not.
+func TestUnbiasedKernel(t *testing.T) {
+	net := graphiotest.Road(220, 4)
+	var list []graphio.Sample
+	for i := range uint64(40) {
+		list = append(list, graphiotest.Counts(graphiotest.Smooth(net, i/20), 300, i))
+	}
+	r := must(t, method{"kernel", Kernel}, net, graphiotest.Samples(net, list...), Options{Shares: true, Unbiased: true})
+	var within, between []float64
+	for i := range list {
+		for j := range i {
+			if d := r.Matrix.At(i, j); i/20 == j/20 {
+				within = append(within, d)
+			} else {
+				between = append(between, d)
+			}
+		}
+	}
+	mean, spread := stat.MeanStdDev(within, nil)
+	// 380 pairs of 40 samples: some 40 independent ones.
+	if math.Abs(mean) > 4*spread/math.Sqrt(40) || slices.Min(within) >= 0 {
+		t.Errorf("within a source %g apart on average, spread %g, least %g", mean, spread, slices.Min(within))
+	}
+	if least := slices.Min(between); least < 3*spread {
+		t.Errorf("between sources %g apart at least", least)
+	}
+}

@@ -22,6 +22,9 @@ type Options struct {
 	// Calibrate is how many random pairs Multiscale solves exactly to find its
 	// weights and its error: 0 none, below 0 as many as DefaultPairs says.
 	Calibrate int
+	// Unbiased asks Kernel for the unbiased MMD² of counts instead of the root of
+	// the biased one.
+	Unbiased bool
 	// Stored is a calibration of an earlier run, which Multiscale uses instead
 	// of one of its own.
 	Stored *Model

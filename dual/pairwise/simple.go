@@ -2,6 +2,7 @@ package pairwise
 
 import (
 	"context"
+	"fmt"
 	"math"
 
 	"example.org/barrow/dual"
@@ -37,16 +38,24 @@ func Variation(ctx context.Context, net *graphio.Network, samples *graphio.Sampl
 
 // Kernel is the maximum mean discrepancy of the shares of every pair under the
 // heat kernels of the network, summed over the dyadic times: the root of MMD²,
-// a distance without unit (Gretton et al. 2012). See dual.Features.
+// a distance without unit (Gretton et al. 2012). With Options.Unbiased it is the
+// unbiased MMD² itself, each count being one point: 0 in the mean, and often
+// below, where two samples come from one source. See dual.Features.
 //
-// Errors: ErrMethod for amounts; otherwise as Multiscale.
-// Cost: as Multiscale without calibration.
+// Errors: ErrMethod for amounts; with Unbiased samples of other than counts, or
+// of fewer than two; otherwise as Multiscale. Cost: as Multiscale without
+// calibration; with Unbiased that of one more sample for each node with mass.
 func Kernel(ctx context.Context, net *graphio.Network, samples *graphio.Samples, opt Options) (*Result, error) {
 	if !opt.Shares {
 		return nil, ErrMethod
 	}
 	if err := fitting(net, samples); err != nil {
 		return nil, err
+	}
+	if opt.Unbiased {
+		if err := countsOnly(samples); err != nil {
+			return nil, err
+		}
 	}
 	var features *dual.Features
 	var made *dual.Multiscale
@@ -57,7 +66,7 @@ func Kernel(ctx context.Context, net *graphio.Network, samples *graphio.Samples,
 		if err := opt.afford(matrixPart(samples.Len(), false, false), vectorPart(net, samples.Len(), made.Width(), opt.threads())); err != nil {
 			return err
 		}
-		features, err = made.Features(ctx, samples, false, opt.Threads, opt.stage("embed"))
+		features, err = made.Features(ctx, samples, opt.Unbiased, opt.Threads, opt.stage("embed"))
 		return err
 	})
 	if err != nil {
@@ -65,13 +74,33 @@ func Kernel(ctx context.Context, net *graphio.Network, samples *graphio.Samples,
 	}
 	m := newMatrix(samples.Names(), false, false)
 	err = opt.Phases.Time("estimate", func() error {
-		return m.fill(ctx, opt, func(i, j int) float64 { return math.Sqrt(features.Biased(i, j, dual.All)) })
+		return m.fill(ctx, opt, func(i, j int) float64 {
+			if opt.Unbiased {
+				return features.Unbiased(i, j, dual.All)
+			}
+			return math.Sqrt(features.Biased(i, j, dual.All))
+		})
 	})
 	if err != nil {
 		return nil, err
 	}
 	chosen := made.Describe()
 	return &Result{Matrix: m, Diffusion: &chosen}, nil
+}
+
+// countsOnly refuses samples that are not at least two points.
+func countsOnly(samples *graphio.Samples) error {
+	var faults graphio.FaultList
+	for i := range samples.Len() {
+		s := samples.At(i)
+		if !s.Counts() || s.Total() < 2 {
+			faults.Add(graphio.Fault{
+				Found: fmt.Sprintf("sample %q, of a total of %v, is no sample of two counts or more", s.Name, s.Total()),
+				Want:  "whole numbers of counted points for --unbiased",
+			})
+		}
+	}
+	return faults.Err()
 }
 
 // fill sets every pair of a symmetric matrix.
