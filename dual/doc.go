@@ -13,6 +13,7 @@
 // the heat kernel of the network's walk, dyadic times t_k and c_k growing as
 // t_k^{α/2}: an L1 distance between linear embeddings, equivalent up to
 // constants to the transport distance for the ground distance d^α (Leeb &
-// Coifman 2016). Weights fitted to exact distances give it the unit of the
-// lengths.
+// Coifman 2016). Terms add flows to the scales, Weigh makes one L1 distance of
+// them, and weights fitted to exact distances give that the unit of the lengths
+// (package pairwise).
 package dual

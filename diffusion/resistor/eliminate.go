@@ -43,7 +43,7 @@ const (
 	// be eliminated as a full matrix. Road networks of a hundred thousand nodes
 	// stay within; past it, a solve takes ten to twenty steps on the core.
 	effort  = 40_000_000
-	densest = 2048
+	densest = 1400
 )
 
 // half is one end of an edge, as the other end keeps it.

@@ -1,6 +1,7 @@
-// Package pairwise compares all pairs of many samples on one network, by
-// transport solved exactly, by the multiscale estimator calibrated on pairs
-// solved exactly, by kernel discrepancy or by total variation.
+// Package pairwise compares all pairs of many samples on one network: by
+// transport solved exactly, by estimates from vectors calibrated on pairs solved
+// exactly, by upper bounds from flows, by kernel discrepancy or by total
+// variation.
 //
 // Most users need one call:
 //

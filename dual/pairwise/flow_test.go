@@ -130,6 +130,16 @@ func TestAwkward(t *testing.T) {
 			}
 		}
 	}
+	alike, err := graphio.NewSamples(net.Order(), []graphio.Sample{list[0], list[2]})
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, m := range []method{{"multiscale", Multiscale}, {"flow", Flow}, {"hierarchy", Hierarchy}} {
+		r := must(t, m, net, alike, Options{Shares: true, Calibrate: -1, Seed: 1})
+		if d := r.Matrix.At(0, 1); d != 0 {
+			t.Errorf("%s: nothing but the same sample twice, %g apart", m.name, d)
+		}
+	}
 	one, err := graphio.NewSamples(net.Order(), list[:1])
 	if err != nil {
 		t.Fatal(err)

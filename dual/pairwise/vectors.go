@@ -18,8 +18,9 @@ type Vectors struct {
 	Rows, Width int
 	OnDisk      bool
 
-	memory []float32
-	file   *os.File
+	memory   []float32
+	file     *os.File
+	nameless bool
 	// In the file the columns come block by block, each with its part of all
 	// rows, so that comparing all pairs reads every byte once.
 	block int
@@ -65,6 +66,9 @@ func (v *Vectors) toDisk(ctx context.Context, e embedder, samples *graphio.Sampl
 	if v.file, err = os.CreateTemp(opt.Scratch, ".barrow-vectors-*"); err != nil {
 		return fmt.Errorf("vectors of the samples: %w", err)
 	}
+	// Where a file that is open can be removed, nothing is left of it however
+	// the run ends.
+	v.nameless = os.Remove(v.file.Name()) == nil
 	room = max(room, 1<<20)
 	columns := int(room / 2 / 4 / uint64(max(v.Rows, 1)))
 	v.block = max(columnStep, columns/columnStep*columnStep)
@@ -167,8 +171,10 @@ func (v *Vectors) Close() error {
 		return nil
 	}
 	err := v.file.Close()
-	if removed := os.Remove(v.file.Name()); err == nil {
-		err = removed
+	if !v.nameless {
+		if removed := os.Remove(v.file.Name()); err == nil {
+			err = removed
+		}
 	}
 	v.file = nil
 	return err
