@@ -46,6 +46,8 @@ type Options struct {
 	// Progress, if set, is told how much of a stage is done, by one goroutine
 	// at a time. The stages are named as phases are.
 	Progress func(stage string, done, total int)
+	// Journal, if set, keeps what Certified solves.
+	Journal *Journal
 	// Phases, if set, takes down the time and memory of each phase.
 	Phases *Phases
 }
@@ -65,6 +67,8 @@ type Result struct {
 	// OnDisk whether the vectors did not fit memory.
 	Width  int
 	OnDisk bool
+	// Certificate is that of Certified, else nil.
+	Certificate *Certificate
 	// Vectors holds them, if Options.KeepVectors asked for it.
 	Vectors *Vectors
 }
