@@ -113,44 +113,49 @@ func (b *bounds) ceilings(ctx context.Context, net *graphio.Network, compared *g
 	})
 }
 
-// landmarks raises the lower bounds by distances from nodes far from each
-// other: each such distance is a potential.
+// landmarks raises the lower bounds by distances from nodes far from each other.
 func (b *bounds) landmarks(ctx context.Context, net *graphio.Network, compared *graphio.Samples, count int, opt Options) error {
+	return eachLandmark(ctx, net, count, opt.Unmatched, func(potential []float64) {
+		b.witness(heightsOn(potential, compared))
+	})
+}
+
+// eachLandmark calls use with distances from nodes as far from each other as
+// can be, one after the other: each is a potential.
+func eachLandmark(ctx context.Context, net *graphio.Network, count int, unmatched float64, use func(potential []float64)) error {
 	n := net.Order()
 	nearest := make([]float64, n) // to a landmark so far
 	for v := range nearest {
 		nearest[v] = math.Inf(1)
 	}
+	potential := make([]float64, n)
 	mark := 0
 	for range min(count, n) {
 		if err := ctx.Err(); err != nil {
 			return err
 		}
-		potential := make([]float64, n)
 		for v := range potential {
 			potential[v] = math.Inf(1)
 		}
 		potential[mark] = 0
 		shortest.Sweep(net, potential, shortest.Either, nil)
-		next, far := mark, 0.0
+		far := 0.0
 		for v, d := range potential {
 			nearest[v] = min(nearest[v], d)
 			if nearest[v] > far {
-				next, far = v, nearest[v]
+				mark, far = v, nearest[v]
 			}
 			switch {
-			case opt.Unmatched > 0: // no potential is worth more than removing mass
-				potential[v] = min(max(d-opt.Unmatched, -opt.Unmatched), opt.Unmatched)
+			case unmatched > 0: // no potential is worth more than removing mass
+				potential[v] = min(max(d-unmatched, -unmatched), unmatched)
 			case math.IsInf(d, 1): // another part: nothing leads there
 				potential[v] = 0
 			}
 		}
-		height, slack := heightsOn(potential, compared)
-		b.witness(height, slack)
+		use(potential)
 		if far == 0 {
 			break
 		}
-		mark = next
 	}
 	return nil
 }

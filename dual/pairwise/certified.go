@@ -18,10 +18,8 @@ type Goal struct {
 	// Gap is how wide (upper − lower) / upper may be.
 	Gap  float64
 	Mean bool
-	// Top proves which the Top nearest samples of every sample are, or of sample
-	// Query alone where it is not below 0.
-	Top   int
-	Query int
+	// Top proves which the Top nearest samples of every sample are.
+	Top int
 	// Threshold proves of every pair whether it is nearer than that.
 	Threshold float64
 	// Extremes also proves which pair is nearest and which farthest, and Groups,
@@ -148,9 +146,9 @@ func (c *certifier) refine() error {
 		if c.goal.Budget > 0 && time.Now().After(c.end) {
 			return nil
 		}
-		batch := open[:min(len(open), c.batch())]
-		slices.SortFunc(batch, func(a, b pair) int { return cmp.Or(cmp.Compare(a.i, b.i), cmp.Compare(a.j, b.j)) })
-		outcomes, err := c.outcomes(batch)
+		chosen := open[:min(len(open), batch)]
+		slices.SortFunc(chosen, func(a, b pair) int { return cmp.Or(cmp.Compare(a.i, b.i), cmp.Compare(a.j, b.j)) })
+		outcomes, err := c.outcomes(chosen)
 		if err != nil {
 			return err
 		}
@@ -160,14 +158,8 @@ func (c *certifier) refine() error {
 	}
 }
 
-// batch is how many pairs are solved before the next choice: few where each
-// may settle the question.
-func (c *certifier) batch() int {
-	if c.goal.Top > 0 && c.goal.Query >= 0 {
-		return 8
-	}
-	return 64
-}
+// batch is how many pairs are solved before the next choice.
+const batch = 64
 
 // An outcome is what a solve proved.
 type outcome struct {
@@ -303,16 +295,8 @@ func (c *certifier) openTop() []pair {
 	k := min(c.goal.Top, n-1)
 	chosen := map[int]bool{}
 	var list []pair
-	from, to := 0, n
-	if c.goal.Query >= 0 {
-		from, to = c.goal.Query, c.goal.Query+1
-	}
-	each := 1
-	if to-from == 1 {
-		each = c.batch()
-	}
 	uppers := make([]float64, 0, n)
-	for i := from; i < to; i++ {
+	for i := range n {
 		uppers = uppers[:0]
 		for j := range n {
 			if j != i {
@@ -321,29 +305,22 @@ func (c *certifier) openTop() []pair {
 		}
 		slices.Sort(uppers)
 		limit := uppers[k-1]
-		var rivals []int // that may be among the nearest
+		rivals, best, least := 0, -1, math.Inf(1)
 		for j := range n {
-			if j != i && c.b.Lower[c.b.Index(i, j)] < limit {
-				rivals = append(rivals, j)
-			}
-		}
-		if len(rivals) <= k && c.goal.Query < 0 {
-			continue
-		}
-		slices.SortStableFunc(rivals, func(a, b int) int {
-			return cmp.Compare(c.b.Lower[c.b.Index(i, a)], c.b.Lower[c.b.Index(i, b)])
-		})
-		left := each
-		for _, j := range rivals {
-			at := c.b.Index(i, j)
-			if c.b.solved[at] || chosen[at] {
+			if j == i {
 				continue
 			}
-			chosen[at] = true
-			list = append(list, pair{min(i, j), max(i, j)})
-			if left--; left == 0 {
-				break
+			at := c.b.Index(i, j)
+			if l := c.b.Lower[at]; l < limit {
+				rivals++
+				if l < least && !c.b.solved[at] && !chosen[at] {
+					best, least = j, l
+				}
 			}
+		}
+		if rivals > k && best >= 0 {
+			chosen[c.b.Index(i, best)] = true
+			list = append(list, pair{min(i, best), max(i, best)})
 		}
 	}
 	return list

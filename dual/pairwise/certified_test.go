@@ -119,7 +119,7 @@ func TestCertifiedQuestions(t *testing.T) {
 		}
 		opt := Options{Shares: true, Calibrate: 20, Seed: 2}
 		const k = 3
-		r, err := Certified(context.Background(), net, samples, Goal{Top: k, Query: -1, Extremes: true, Groups: [][]int{{0, 5, 10, 15, 20}, {1, 4, 6, 9, 11}}}, opt)
+		r, err := Certified(context.Background(), net, samples, Goal{Top: k, Extremes: true, Groups: [][]int{{0, 5, 10, 15, 20}, {1, 4, 6, 9, 11}}}, opt)
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -148,7 +148,7 @@ func TestCertifiedQuestions(t *testing.T) {
 		}
 		middle := slices.Sorted(slices.Values(all.Matrix.Value))[len(all.Matrix.Value)/2]
 		threshold := middle * (1 + 1e-6)
-		r, err = Certified(context.Background(), net, samples, Goal{Threshold: threshold, Query: -1}, opt)
+		r, err = Certified(context.Background(), net, samples, Goal{Threshold: threshold}, opt)
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -157,12 +157,19 @@ func TestCertifiedQuestions(t *testing.T) {
 				t.Errorf("%s: distance %v lies in [%v, %v], threshold %v", name, d, r.Matrix.Lower[at], r.Matrix.Upper[at], threshold)
 			}
 		}
-		r, err = Certified(context.Background(), net, samples, Goal{Top: 4, Query: 7}, opt)
+		ranked, c, err := Rank(context.Background(), net, samples, 7, 4, opt)
 		if err != nil {
 			t.Fatal(err)
 		}
-		if got, want := nearest(r.Matrix.At, samples.Len(), 7, 4), nearest(all.Matrix.At, samples.Len(), 7, 4); !slices.Equal(got, want) {
-			t.Errorf("%s: ranking %v, want %v", name, got, want)
+		var got []int
+		for _, x := range ranked {
+			got = append(got, x.Sample)
+			if d := all.Matrix.At(7, x.Sample); math.Abs(x.Distance-d) > 1e-9*d || x.Lower > d*(1+1e-12) || x.Upper < d*(1-1e-12) {
+				t.Errorf("%s: %+v, the distance is %v", name, x, d)
+			}
+		}
+		if want := nearest(all.Matrix.At, samples.Len(), 7, 4); !slices.Equal(got, want) || c.Solved >= c.Pairs {
+			t.Errorf("%s: ranking %v, want %v; %+v", name, got, want, c)
 		}
 	}
 }
