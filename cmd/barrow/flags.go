@@ -33,6 +33,7 @@ type settings struct {
 	test                    testFlags
 	noise                   noiseFlags
 	noisy                   bool // matrix --noise
+	goal                    goalFlags
 
 	seed    uint64
 	threads int
@@ -158,6 +159,9 @@ func (set *settings) methods() []string {
 	list := []string{"multiscale", "exact", "kernel", "variation"}
 	if set.flags.Lookup("calibrate") != nil { // of a whole matrix
 		list = append(list, "flow", "hierarchy")
+	}
+	if set.flags.Lookup("gap-mean") != nil {
+		list = append(list, "certified")
 	}
 	return list
 }

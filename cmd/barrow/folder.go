@@ -11,13 +11,17 @@ import (
 	"os"
 	"path/filepath"
 	"strings"
+
+	"github.com/gofrs/flock"
+
+	"example.org/barrow/dual/pairwise"
 )
 
 // resultFiles are all that a results folder may hold of barrow; the record comes
 // last.
 var resultFiles = []string{
 	"matrix.csv", "pairs.csv", "calibration.csv", "calibration.json", "vectors.npy", "vectors.json", "flows.csv", "potentials.csv", "unmatched.csv",
-	"tests.csv", "comparisons.csv", "where.csv", "noise.csv", "map.csv", "tree.nwk", "clusters.csv", "outliers.csv", recordFile,
+	"tests.csv", "comparisons.csv", "where.csv", "noise.csv", "map.csv", "tree.nwk", "clusters.csv", "outliers.csv", "ranking.csv", recordFile,
 }
 
 // A folder takes results. They are written to a hidden folder beside it and
@@ -27,6 +31,9 @@ type folder struct {
 	typed   string // the same as the user put it
 	staging string
 	outputs []recordedFile
+	lock    *flock.Flock      // held while the run lasts
+	journal *pairwise.Journal // nil unless the run can go on after it was cut off
+	kept    string            // its path
 }
 
 // openFolder prepares --out for a run. same is true where it holds the results
@@ -46,8 +53,48 @@ func openFolder(out string, replace bool, r *record) (f *folder, same bool, err 
 	if f.out, err = filepath.Abs(out); err != nil {
 		return nil, false, err
 	}
-	f.staging, err = hidden(f.out)
+	above := nearestAbove(f.out)
+	if err := f.claim(above); err != nil {
+		return f, false, err
+	}
+	f.staging, err = hidden(above, f.out)
 	return f, false, err
+}
+
+// nearestAbove is the nearest folder above out that exists.
+func nearestAbove(out string) string {
+	above := filepath.Dir(out)
+	for {
+		if _, err := os.Stat(above); err == nil || above == filepath.Dir(above) {
+			return above
+		}
+		above = filepath.Dir(above)
+	}
+}
+
+// claim sees to it that no other run writes to the same folder, and takes away
+// what one that was killed left behind.
+func (f *folder) claim(above string) error {
+	base := filepath.Base(f.out)
+	lock := flock.New(filepath.Join(above, "."+base+".lock"))
+	got, err := lock.TryLock()
+	if err != nil {
+		return err
+	}
+	if !got {
+		return fmt.Errorf("%s: another run is at work on it; wait for it to end, or give another --out", f.typed)
+	}
+	f.lock = lock
+	entries, err := os.ReadDir(above)
+	if err != nil {
+		return err
+	}
+	for _, e := range entries {
+		if strings.HasPrefix(e.Name(), "."+base+".unfinished-") {
+			os.RemoveAll(filepath.Join(above, e.Name()))
+		}
+	}
+	return nil
 }
 
 // occupied looks at what the folder holds.
@@ -111,15 +158,8 @@ func (r *record) intact(out string) bool {
 	return true
 }
 
-// hidden makes a folder of its own in the nearest folder above out that exists.
-func hidden(out string) (string, error) {
-	above := filepath.Dir(out)
-	for {
-		if _, err := os.Stat(above); err == nil || above == filepath.Dir(above) {
-			break
-		}
-		above = filepath.Dir(above)
-	}
+// hidden makes a folder of its own in the one above out.
+func hidden(above, out string) (string, error) {
 	for k := 0; ; k++ {
 		name := filepath.Join(above, fmt.Sprintf(".%s.unfinished-%d-%d", filepath.Base(out), os.Getpid(), k))
 		if err := os.Mkdir(name, 0o777); !errors.Is(err, fs.ErrExist) {
@@ -176,9 +216,14 @@ func (f *folder) commit(r *record) error {
 		return err
 	}
 	if _, err := os.Stat(f.out); errors.Is(err, fs.ErrNotExist) {
-		return os.Rename(f.staging, f.out)
+		err = os.Rename(f.staging, f.out)
+	} else {
+		err = f.moveIn()
 	}
-	return f.moveIn()
+	if err == nil && f.journal != nil {
+		err = os.Remove(f.kept)
+	}
+	return err
 }
 
 // moveIn replaces results in a folder that is there. The old record goes first
@@ -210,8 +255,20 @@ func (f *folder) moveIn() error {
 
 // discard takes away what was not moved in; after commit there is nothing left.
 func (f *folder) discard() {
-	if f != nil {
+	if f == nil {
+		return
+	}
+	if f.staging != "" {
 		os.RemoveAll(f.staging)
+	}
+	worth := f.journal.Worth()
+	f.journal.Close()
+	if f.journal != nil && !worth {
+		os.Remove(f.kept)
+	}
+	if f.lock != nil {
+		os.Remove(f.lock.Path())
+		f.lock.Unlock()
 	}
 }
 

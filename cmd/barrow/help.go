@@ -12,6 +12,7 @@ Commands
   inspect    describe a network and its samples, and list every problem found
   matrix     distances between all samples
   pair A B   compare two samples: distance, proof, flow on every edge
+  rank Q     the samples nearest to one, proved
   test       do groups of samples differ by more than chance, and where
   noise      which distances are more than counting noise
   shape      a map, a tree and groups of the samples
@@ -103,6 +104,8 @@ Method
                         default). Calibrated, they have the unit of your edge
                         lengths
            exact        every pair solved and proved; honours one-way edges
+           certified    every distance between two proved bounds; pairs are solved
+                        only as far as the question below needs
            flow         an upper bound of every distance, proved, without solving
                         any pair
            hierarchy    along a spanning tree: the cheapest that knows lengths,
@@ -119,6 +122,14 @@ Method
                         distance of two is the estimate, for your own index or
                         classifier. Estimates then leave out the term of the
                         proofs, which is no L1 distance, and are a little worse
+  --gap G               certified: until (upper - lower) / upper of every pair is at
+                        most G, 0.01 by default; or until
+  --gap-mean G          the mean over all pairs is; or
+  --top K               each sample's K nearest are proved; or
+  --threshold X         it is proved which pairs are nearer than X
+  --budget T            stop after T, like 5m, with the bounds reached
+  --groups FILE --medoids-by COLUMN
+                        also prove the middle sample of each group
   --noise               also what counting noise makes of every pair: columns
                         floor, excess and p of pairs.csv, see barrow help noise;
                         --draws N and --dispersion X as there
@@ -299,6 +310,21 @@ Results
                           tree.nwk         the tree, in Newick form
                           clusters.csv     sample,cluster,medoid,silhouette
                           outliers.csv     sample,score,excess,p,false_discovery
+                          run.json         what was run, on what
+  --replace             write over results of another run in DIR
+`
+
+const rankHelp = `barrow rank finds the samples nearest to one, nearest first, and proves that no
+other is nearer. Bounds leave most samples aside; the rest are solved exactly.
+
+Example
+  barrow rank w1-thu-08 --edges harbour/edges.csv --samples harbour/samples.csv --top 5
+` + inputHelp + `
+  --top K               how many; 10 by default
+` + comparisonHelp + runHelp + replayHelp + `
+Results
+  --out DIR             where they go; without it nothing is written:
+                          ranking.csv      rank,sample,distance,lower,upper
                           run.json         what was run, on what
   --replace             write over results of another run in DIR
 `

@@ -48,6 +48,7 @@ type session struct {
 	command        string
 	progress       progress
 	phases         pairwise.Phases
+	kept           string // the journal of a run that can go on
 }
 
 // commands lists what barrow does, in the order of its manual.
@@ -59,6 +60,7 @@ var commands = []struct {
 	{"inspect", inspectHelp, (*session).inspect},
 	{"matrix", matrixHelp, (*session).matrix},
 	{"pair", pairHelp, (*session).pair},
+	{"rank", rankHelp, (*session).rank},
 	{"test", testHelp, (*session).testSamples},
 	{"noise", noiseHelp, (*session).noise},
 	{"shape", shapeHelp, (*session).shape},
@@ -161,6 +163,9 @@ func (s *session) fail(err error) int {
 		if s.command == "demo" {
 			left = "the files that are there are whole"
 		}
+		if _, err := os.Stat(s.kept); s.kept != "" && err == nil {
+			left = fmt.Sprintf("what was solved is kept in %s, and the same command goes on from there", s.kept)
+		}
 		fmt.Fprintf(s.stderr, "%s: interrupted; %s\n", name, left)
 		return interrupted
 	case errors.As(err, &usage):
@@ -173,7 +178,7 @@ func (s *session) fail(err error) int {
 			fmt.Fprintf(s.stderr, "%s: %d problems in the input\n  %s\n", name, faults.Total, strings.ReplaceAll(err.Error(), "\n", "\n  "))
 		}
 		return badInput
-	case errors.As(err, &memory), badDesign(err), errors.Is(err, exact.ErrTotals), errors.Is(err, exact.ErrUnreachable):
+	case errors.As(err, &memory), badDesign(err), errors.Is(err, pairwise.ErrMethod), errors.Is(err, exact.ErrTotals), errors.Is(err, exact.ErrUnreachable):
 		fmt.Fprintf(s.stderr, "%s: %v\n", name, err)
 		return badInput
 	}

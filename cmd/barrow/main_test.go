@@ -32,8 +32,11 @@ func TestMain(m *testing.M) {
 //	code N CMD…        run a command that must end with exit code N
 //	nothing-left DIR   the folder holds no hidden file or folder
 //	edit FILE RE NEW   replace what matches a regular expression, which must be there
-//	grid               write a large network and samples: edges.csv and samples.csv
+//	grid [SIDE N]      write a large network and N samples: edges.csv and samples.csv
 //	interrupt CMD…     run a command, send it Ctrl-C as it works: it must end with 130
+//	cutoff N CMD…      run a command and kill it at random moments, N times; each goes
+//	                   on where the last was killed
+//	together CMD…      run a command twice at once: one must refuse, the other end well
 func TestScripts(t *testing.T) {
 	scripts, err := filepath.Glob("testdata/*.txtar")
 	if err != nil || len(scripts) == 0 {
@@ -43,6 +46,7 @@ func TestScripts(t *testing.T) {
 		Dir: "testdata",
 		Cmds: map[string]func(*testscript.TestScript, bool, []string){
 			"code": wantCode, "nothing-left": nothingLeft, "interrupt": interrupt, "grid": writeGrid, "edit": edit,
+			"cutoff": cutoff, "together": together,
 		},
 	})
 }
@@ -124,7 +128,14 @@ func edit(ts *testscript.TestScript, neg bool, args []string) {
 
 // writeGrid writes a network and samples that keep the solver busy for long.
 func writeGrid(ts *testscript.TestScript, neg bool, args []string) {
-	const side, samples = 150, 40
+	side, samples := 150, 40
+	if len(args) == 2 {
+		var err error
+		side, err = strconv.Atoi(args[0])
+		ts.Check(err)
+		samples, err = strconv.Atoi(args[1])
+		ts.Check(err)
+	}
 	var edges, values strings.Builder
 	edges.WriteString("from,to,length\n")
 	values.WriteString("sample,node,value\n")
@@ -149,6 +160,60 @@ func writeGrid(ts *testscript.TestScript, neg bool, args []string) {
 	}
 	ts.Check(os.WriteFile(ts.MkAbs("edges.csv"), []byte(edges.String()), 0o644))
 	ts.Check(os.WriteFile(ts.MkAbs("samples.csv"), []byte(values.String()), 0o644))
+}
+
+// cutoff starts a command again and again and kills it after ever longer times,
+// so that it dies in all its stages.
+func cutoff(ts *testscript.TestScript, neg bool, args []string) {
+	times, err := strconv.Atoi(args[0])
+	ts.Check(err)
+	path, err := exec.LookPath(args[1])
+	ts.Check(err)
+	for k := range times {
+		cmd := exec.Command(path, args[2:]...)
+		cmd.Dir = ts.MkAbs(".")
+		ts.Check(cmd.Start())
+		time.Sleep(time.Duration(40+120*k) * time.Millisecond)
+		for begin := time.Now(); k == times-1 && !journalled(cmd.Dir); time.Sleep(5 * time.Millisecond) {
+			if time.Since(begin) > time.Minute {
+				ts.Fatalf("nothing in a journal after a minute")
+			}
+		}
+		cmd.Process.Kill()
+		cmd.Wait()
+	}
+}
+
+// journalled reports whether a journal has more in it than what run it is of.
+func journalled(dir string) bool {
+	list, _ := filepath.Glob(filepath.Join(dir, "*.journal"))
+	for _, path := range list {
+		if info, err := os.Stat(path); err == nil && info.Size() > 200 {
+			return true
+		}
+	}
+	return false
+}
+
+// together starts a command and, while it holds its folder, the same again.
+func together(ts *testscript.TestScript, neg bool, args []string) {
+	path, err := exec.LookPath(args[0])
+	ts.Check(err)
+	first := exec.Command(path, args[1:]...)
+	first.Dir = ts.MkAbs(".")
+	ts.Check(first.Start())
+	for begin := time.Now(); len(hiddenIn(first.Dir)) < 2; time.Sleep(5 * time.Millisecond) { // lock and staging
+		if time.Since(begin) > time.Minute {
+			ts.Fatalf("no sign of work after a minute")
+		}
+	}
+	second := exec.Command(path, args[1:]...)
+	second.Dir = first.Dir
+	text, err := second.CombinedOutput()
+	if err == nil || !strings.Contains(string(text), "another run is at work on it") {
+		ts.Fatalf("the second run: %v, %s", err, text)
+	}
+	ts.Check(first.Wait())
 }
 
 // The help texts say what is so: their examples run, each flag they list is

@@ -33,6 +33,7 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	set.flags.BoolVar(&set.vectors, "vectors", false, "")
 	set.flags.BoolVar(&set.unbiased, "unbiased", false, "")
 	set.flags.StringVar(&set.hold, "hold", "auto", "")
+	set.goals()
 	set.flags.BoolVar(&set.noisy, "noise", false, "")
 	set.flags.IntVar(&set.noise.draws, "draws", 199, "")
 	set.flags.StringVar(&set.noise.dispersion, "dispersion", "1", "")
@@ -49,6 +50,9 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	}
 	if len(rest) > 0 {
 		return nil, nil, usageError{fmt.Sprintf("%q, where only flags are taken; barrow pair A B compares two samples", rest[0])}
+	}
+	if err := set.goal.check(set); err != nil {
+		return nil, nil, err
 	}
 	if set.noisy {
 		if err := set.noise.check(set); err != nil {
@@ -105,7 +109,10 @@ func (s *session) measure(set *settings, d *data, recorded *record) (*pairwise.R
 		debug.SetMemoryLimit(int64(opt.Memory)) // collect garbage harder as it comes near
 	}
 	opt.Stored = d.model
-	r, err := methods[set.method](s.ctx, d.net, d.samples, opt)
+	if opt.Journal, err = s.journal(set, f, rec); err != nil {
+		return nil, err
+	}
+	r, err := s.compute(set, d, opt)
 	if err != nil {
 		return nil, err
 	}
@@ -138,6 +145,18 @@ func (s *session) measure(set *settings, d *data, recorded *record) (*pairwise.R
 var methods = map[string]func(context.Context, *graphio.Network, *graphio.Samples, pairwise.Options) (*pairwise.Result, error){
 	"multiscale": pairwise.Multiscale, "exact": pairwise.Exact, "kernel": pairwise.Kernel, "variation": pairwise.Variation,
 	"flow": pairwise.Flow, "hierarchy": pairwise.Hierarchy,
+}
+
+// compute makes the matrix by the chosen method.
+func (s *session) compute(set *settings, d *data, opt pairwise.Options) (*pairwise.Result, error) {
+	if set.method != "certified" {
+		return methods[set.method](s.ctx, d.net, d.samples, opt)
+	}
+	goal, err := set.goal.goal(set, d)
+	if err != nil {
+		return nil, err
+	}
+	return pairwise.Certified(s.ctx, d.net, d.samples, goal, opt)
 }
 
 func pairCount(d *data) int {
@@ -268,6 +287,9 @@ func summary(w io.Writer, set *settings, d *data, r *pairwise.Result) {
 		fmt.Fprintf(w, "%s  %s  %s and %s\n", e.word, human(r.Matrix.At(e.p[0], e.p[1])), r.Matrix.Names[e.p[0]], r.Matrix.Names[e.p[1]])
 	}
 	fmt.Fprintf(w, "median    %s over %s\n", human(middle), several(pairCount(d), "pair"))
+	if r.Certificate != nil {
+		certificateLines(w, set, d, r)
+	}
 	fmt.Fprintf(w, "unit      %s\n", unitLine(set, r))
 }
 
@@ -283,6 +305,8 @@ func methodLine(set *settings, r *pairwise.Result) string {
 		return "kernel: maximum mean discrepancy under heat kernels"
 	case "variation":
 		return "variation: half the sum of node-by-node differences, blind to where nodes lie"
+	case "certified":
+		return certifiedLine(r)
 	case "flow":
 		return "flow: what it costs to move the mass as current flows; no distance is larger"
 	}

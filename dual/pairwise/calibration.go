@@ -80,7 +80,9 @@ func solved(ctx context.Context, net *graphio.Network, compared *graphio.Samples
 	c = &Calibration{Pairs: make([]CalibrationPair, count)}
 	out := heldOut(count, opt.Seed)
 	witness = make([]potentials, count)
-	err = solvePairs(ctx, net, compared, pairs, opt, "calibrate", func(k int, r *exact.Result) {
+	report := opt.stage("calibrate")
+	progress := func(done int) { report(done, len(pairs)) }
+	err = solvePairs(ctx, net, compared, pairs, runLength(len(pairs)), opt, progress, func(k int, r *exact.Result) {
 		c.Pairs[k] = CalibrationPair{I: pairs[k].i, J: pairs[k].j, Exact: r.Distance(), HeldOut: out[k]}
 		if !out[k] && !opt.KeepVectors {
 			witness[k] = shortened(r.Potential)

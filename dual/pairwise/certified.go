@@ -83,6 +83,9 @@ func Certified(ctx context.Context, net *graphio.Network, samples *graphio.Sampl
 	}
 	for k, x := range r.Matrix.Value {
 		r.Matrix.Value[k] = min(max(x, c.b.Lower[k]), c.b.Upper[k])
+		if c.b.gap(k) <= 1e-8 { // solved: what its flow costs
+			r.Matrix.Value[k] = c.b.Upper[k]
+		}
 	}
 	r.Matrix.Lower, r.Matrix.Upper = c.b.Lower, c.b.Upper
 	r.Certificate = c.certificate()

@@ -25,17 +25,44 @@ func Exact(ctx context.Context, net *graphio.Network, samples *graphio.Samples, 
 	}
 	m := newMatrix(samples.Names(), net.Directed(), true)
 	err = opt.Phases.Time("exact", func() error {
-		pairs := allPairs(n, m.Directed)
-		return solvePairs(ctx, net, compared, pairs, opt, "exact", func(k int, r *exact.Result) {
-			at := m.Index(pairs[k].i, pairs[k].j)
-			m.Value[at], m.Lower[at], m.Upper[at] = r.Distance(), r.Lower, r.Upper
-		})
+		return m.solveAll(ctx, net, compared, allPairs(n, m.Directed), opt)
 	})
 	if err != nil {
 		return nil, err
 	}
 	return &Result{Matrix: m}, nil
 }
+
+// solveAll solves pairs part by part, so that a journal can keep each.
+func (m *Matrix) solveAll(ctx context.Context, net *graphio.Network, compared *graphio.Samples, pairs []pair, opt Options) error {
+	run := runLength(len(pairs))
+	report := opt.stage("exact")
+	for begin := 0; begin < len(pairs); begin += 16 * run {
+		part := pairs[begin:min(len(pairs), begin+16*run)]
+		list := opt.Journal.replay(part)
+		if list == nil {
+			list = make([]outcome, len(part))
+			progress := func(done int) { report(begin+done, len(pairs)) }
+			err := solvePairs(ctx, net, compared, part, run, opt, progress, func(k int, r *exact.Result) {
+				list[k] = outcome{pair: part[k], lower: r.Lower, upper: r.Upper}
+			})
+			if err == nil {
+				err = opt.Journal.append(list)
+			}
+			if err != nil {
+				return err
+			}
+		}
+		for _, o := range list {
+			at := m.Index(o.i, o.j)
+			m.Value[at], m.Lower[at], m.Upper[at] = o.upper, o.lower, o.upper
+		}
+	}
+	return nil
+}
+
+// runLength is how many pairs a solver does before it starts anew.
+func runLength(pairs int) int { return min(32, max(1, pairs/64)) }
 
 // allPairs lists pairs row by row: neighbours share a sample, which is what
 // makes a solver's last tree a good start.
@@ -55,11 +82,9 @@ func allPairs(n int, directed bool) []pair {
 // digit of a distance may depend on the tree a solve starts from, and runs do
 // not depend on the number of threads. take gets each result, from any
 // goroutine.
-func solvePairs(ctx context.Context, net *graphio.Network, compared *graphio.Samples, pairs []pair, opt Options, stage string, take func(k int, r *exact.Result)) error {
-	run := min(32, max(4, len(pairs)/64))
+func solvePairs(ctx context.Context, net *graphio.Network, compared *graphio.Samples, pairs []pair, run int, opt Options, report func(done int), take func(k int, r *exact.Result)) error {
 	runs := (len(pairs) + run - 1) / run
-	report := opt.stage(stage)
-	return work(ctx, opt.threads(), runs, func(done, _ int) { report(min(done*run, len(pairs)), len(pairs)) }, func() func(int) error {
+	return work(ctx, opt.threads(), runs, func(done, _ int) { report(min(done*run, len(pairs))) }, func() func(int) error {
 		solver, err := exact.NewSolver(net, exact.Options{Unmatched: opt.Unmatched})
 		return func(task int) error {
 			if err != nil {

@@ -19,6 +19,7 @@ type Journal struct {
 	held  [][]outcome // batches of the run before, not yet asked for
 	at    []int64     // where each of them begins in the file
 	found int
+	kept  int // batches on disk that this run has used or added
 }
 
 // ErrJournal: a journal is of another run, and is left as it is.
@@ -122,6 +123,7 @@ func (j *Journal) replay(batch []pair) []outcome {
 		return nil
 	}
 	j.held, j.at = j.held[1:], j.at[1:]
+	j.kept++
 	return list
 }
 
@@ -150,8 +152,12 @@ func (j *Journal) append(list []outcome) error {
 	if _, err := j.file.Write(frame); err != nil {
 		return err
 	}
+	j.kept++
 	return j.file.Sync()
 }
+
+// Worth reports whether the journal saves the next run anything.
+func (j *Journal) Worth() bool { return j != nil && j.kept+len(j.held) > 0 }
 
 // readBatch reads a batch of at most left bytes with its frame; ok is false
 // where there is no whole one.

@@ -51,9 +51,9 @@ type ranking struct {
 	query, count int
 	opt          Options
 
-	lower, upper []float64
-	solved       []bool
-	solves       int
+	lower, upper, distance []float64
+	solved                 []bool
+	solves                 int
 }
 
 // raise takes heights on a potential as lower bounds.
@@ -65,7 +65,7 @@ func (r *ranking) raise(height []float64, slack float64) {
 
 func (r *ranking) begin() error {
 	n := r.compared.Len()
-	r.lower, r.upper, r.solved = make([]float64, n), make([]float64, n), make([]bool, n)
+	r.lower, r.upper, r.distance, r.solved = make([]float64, n), make([]float64, n), make([]float64, n), make([]bool, n)
 	for j := range r.upper {
 		r.upper[j] = math.Inf(1)
 	}
@@ -142,6 +142,7 @@ func (r *ranking) refine() error {
 			r.solves++
 			r.lower[j] = min(results[k].Lower*(1-outward), results[k].Upper)
 			r.upper[j] = results[k].Upper * (1 + outward)
+			r.distance[j] = results[k].Distance()
 		}
 		r.raise(heightsOn(results[0].Potential, r.compared))
 	}
@@ -152,7 +153,7 @@ func (r *ranking) nearest() []Neighbour {
 	var list []Neighbour
 	for j := range r.solved {
 		if r.solved[j] && j != r.query {
-			list = append(list, Neighbour{j, min(max(r.upper[j]*(1-outward), r.lower[j]), r.upper[j]), r.lower[j], r.upper[j]})
+			list = append(list, Neighbour{j, r.distance[j], r.lower[j], r.upper[j]})
 		}
 	}
 	slices.SortStableFunc(list, func(a, b Neighbour) int { return cmp.Compare(a.Distance, b.Distance) })
