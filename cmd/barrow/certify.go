@@ -189,6 +189,7 @@ func (s *session) rank(args []string) error {
 	set.flags.StringVar(&set.mass, "mass", "share", "")
 	set.flags.Float64Var(&set.unmatched, "unmatched", 0, "")
 	set.flags.IntVar(&set.goal.top, "top", 10, "")
+	set.flags.StringVar(&set.from, "from", "", "")
 	set.running()
 	set.results("")
 	set.method = "certified"
@@ -203,8 +204,8 @@ func (s *session) rank(args []string) error {
 	if len(rest) != 1 {
 		return usageError{fmt.Sprintf("%s named; want one: barrow rank Q", several(len(rest), "sample"))}
 	}
-	if set.samples == "" {
-		return usageError{"no samples: want --samples FILE"}
+	if set.samples == "" && set.from == "" {
+		return usageError{"no samples: want --samples FILE, or --from DIR of an earlier run"}
 	}
 	if set.goal.top < 1 {
 		return usageError{fmt.Sprintf("--top %d; want 1 or more", set.goal.top)}
@@ -241,6 +242,7 @@ func (s *session) rank(args []string) error {
 	if err != nil {
 		return err
 	}
+	opt.Known = d.known
 	list, certificate, err := pairwise.Rank(s.ctx, d.net, d.samples, query, set.goal.top, opt)
 	if err != nil {
 		return err

@@ -34,6 +34,8 @@ type settings struct {
 	noise                   noiseFlags
 	noisy                   bool // matrix --noise
 	goal                    goalFlags
+	from                    string  // the results folder of an earlier run
+	earlier                 *stored // the same, read
 
 	seed    uint64
 	threads int
@@ -51,7 +53,7 @@ var unrecorded = []string{"out", "replace", "replay", "help"}
 var harmless = []string{"threads", "memory", "hold"}
 
 // Flags that name files; what they hold counts, not where it stands.
-var files = []string{"edges", "nodes", "samples", "groups", "rows", "columns", "calibration", "distances", "against", "without"}
+var files = []string{"edges", "nodes", "samples", "groups", "rows", "columns", "calibration", "distances", "against", "without", "add", "from"}
 
 func newSettings(command string) *settings {
 	set := &settings{flags: pflag.NewFlagSet(command, pflag.ContinueOnError), hold: "auto"}

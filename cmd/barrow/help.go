@@ -130,6 +130,9 @@ Method
   --budget T            stop after T, like 5m, with the bounds reached
   --groups FILE --medoids-by COLUMN
                         also prove the middle sample of each group
+  --add DIR             extend the results in DIR by the samples given: its own
+                        samples come first, and nothing that it knows is done
+                        again. Network and comparison are taken from there
   --noise               also what counting noise makes of every pair: columns
                         floor, excess and p of pairs.csv, see barrow help noise;
                         --draws N and --dispersion X as there
@@ -321,6 +324,8 @@ Example
   barrow rank w1-thu-08 --edges harbour/edges.csv --samples harbour/samples.csv --top 5
 ` + inputHelp + `
   --top K               how many; 10 by default
+  --from DIR            rank among the samples of a results folder of barrow
+                        matrix, and use what it has proved; with --samples, more
 ` + comparisonHelp + runHelp + replayHelp + `
 Results
   --out DIR             where they go; without it nothing is written:

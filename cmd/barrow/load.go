@@ -19,7 +19,9 @@ type data struct {
 	warnings []string
 	model    *pairwise.Model // of --calibration; nil without
 
-	groups                      *graphio.Groups
+	known  []pairwise.Known // pairs that an earlier run bounded
+	groups *graphio.Groups
+
 	distances, against, without *pairwise.Matrix // of files
 }
 
@@ -39,13 +41,20 @@ func (s *session) load(set *settings) (*data, error) {
 		}
 		d.net = net
 		d.add(source)
-		if set.samples == "" || s.ctx.Err() != nil {
+		if set.samples == "" && set.earlier == nil || s.ctx.Err() != nil {
 			return s.ctx.Err()
 		}
-		if d.samples, source, err = graphio.ReadSamples(set.samples, net, set.sampling()); err != nil {
-			return err
+		if set.samples != "" {
+			if d.samples, source, err = graphio.ReadSamples(set.samples, net, set.sampling()); err != nil {
+				return err
+			}
+			d.add(source)
 		}
-		d.add(source)
+		if set.earlier != nil {
+			if err := set.earlier.extend(d, set); err != nil {
+				return err
+			}
+		}
 		if set.stored != "" {
 			if err := d.readModel(set.stored); err != nil {
 				return err

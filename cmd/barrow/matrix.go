@@ -34,6 +34,7 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	set.flags.BoolVar(&set.unbiased, "unbiased", false, "")
 	set.flags.StringVar(&set.hold, "hold", "auto", "")
 	set.goals()
+	set.flags.StringVar(&set.from, "add", "", "")
 	set.flags.BoolVar(&set.noisy, "noise", false, "")
 	set.flags.IntVar(&set.noise.draws, "draws", 199, "")
 	set.flags.StringVar(&set.noise.dispersion, "dispersion", "1", "")
@@ -47,6 +48,9 @@ func (s *session) makeMatrix(args []string) (*data, *pairwise.Result, error) {
 	recorded, rest, err := s.settle(set, rest)
 	if err != nil {
 		return nil, nil, err
+	}
+	if set.from != "" && set.noisy {
+		return nil, nil, usageError{"--noise with --add; want the one or the other"}
 	}
 	if len(rest) > 0 {
 		return nil, nil, usageError{fmt.Sprintf("%q, where only flags are taken; barrow pair A B compares two samples", rest[0])}
@@ -84,6 +88,12 @@ func (s *session) settle(set *settings, rest []string) (*record, []string, error
 			set.out = "" // repeat, compare, keep nothing
 		}
 	}
+	if set.from != "" {
+		var err error
+		if set.earlier, err = buildOn(set, set.from); err != nil {
+			return nil, nil, err
+		}
+	}
 	return recorded, rest, set.check()
 }
 
@@ -108,7 +118,7 @@ func (s *session) measure(set *settings, d *data, recorded *record) (*pairwise.R
 	if opt.Memory > 0 {
 		debug.SetMemoryLimit(int64(opt.Memory)) // collect garbage harder as it comes near
 	}
-	opt.Stored = d.model
+	opt.Stored, opt.Known = d.model, d.known
 	if opt.Journal, err = s.journal(set, f, rec); err != nil {
 		return nil, err
 	}

@@ -126,6 +126,14 @@ func (c *certifier) begin(r *Result) error {
 			return err
 		}
 	}
+	for _, k := range c.opt.Known {
+		if k.tight() {
+			c.b.settle(k.I, k.J, k.Lower, k.Upper)
+		} else {
+			at := c.b.Index(k.I, k.J)
+			c.b.Lower[at], c.b.Upper[at] = max(c.b.Lower[at], k.Lower), min(c.b.Upper[at], k.Upper)
+		}
+	}
 	if r.Calibration == nil {
 		return nil
 	}

@@ -3,6 +3,7 @@ package pairwise
 import (
 	"context"
 	"fmt"
+	"slices"
 
 	"example.org/barrow/exact"
 	"example.org/barrow/graphio"
@@ -25,12 +26,30 @@ func Exact(ctx context.Context, net *graphio.Network, samples *graphio.Samples, 
 	}
 	m := newMatrix(samples.Names(), net.Directed(), true)
 	err = opt.Phases.Time("exact", func() error {
-		return m.solveAll(ctx, net, compared, allPairs(n, m.Directed), opt)
+		return m.solveAll(ctx, net, compared, m.unknown(opt.Known), opt)
 	})
 	if err != nil {
 		return nil, err
 	}
 	return &Result{Matrix: m}, nil
+}
+
+// unknown lists the pairs that no earlier run has solved, and sets those that
+// one has.
+func (m *Matrix) unknown(known []Known) []pair {
+	have := make(map[int]bool, len(known))
+	for _, k := range known {
+		if k.tight() {
+			at := m.Index(k.I, k.J)
+			m.Value[at], m.Lower[at], m.Upper[at] = k.Upper, k.Lower, k.Upper
+			have[at] = true
+		}
+	}
+	list := allPairs(len(m.Names), m.Directed)
+	if len(have) > 0 {
+		list = slices.DeleteFunc(list, func(p pair) bool { return have[m.Index(p.i, p.j)] })
+	}
+	return list
 }
 
 // solveAll solves pairs part by part, so that a journal can keep each.

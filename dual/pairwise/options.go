@@ -46,11 +46,23 @@ type Options struct {
 	// Progress, if set, is told how much of a stage is done, by one goroutine
 	// at a time. The stages are named as phases are.
 	Progress func(stage string, done, total int)
+	// Known are pairs bounded by an earlier run on the same network and samples:
+	// Exact leaves those out that it solved, Certified and Rank begin with them.
+	Known []Known
 	// Journal, if set, keeps what Certified solves.
 	Journal *Journal
 	// Phases, if set, takes down the time and memory of each phase.
 	Phases *Phases
 }
+
+// Known is what an earlier run proved of the pair I, J.
+type Known struct {
+	I, J         int
+	Lower, Upper float64
+}
+
+// tight reports whether the bounds are those of a solve to the end.
+func (k Known) tight() bool { return k.Upper-k.Lower <= 1e-8*k.Upper }
 
 // A Result is a matrix and how it came about.
 type Result struct {

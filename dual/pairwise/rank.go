@@ -86,6 +86,16 @@ func (r *ranking) begin() error {
 			r.upper[j] = e.Upper(r.query, j)
 		}
 	}
+	for _, k := range r.opt.Known {
+		j := k.I + k.J - r.query
+		if k.I != r.query && k.J != r.query {
+			continue
+		}
+		r.lower[j], r.upper[j] = max(r.lower[j], k.Lower), min(r.upper[j], k.Upper)
+		if k.tight() {
+			r.solved[j], r.distance[j] = true, k.Upper
+		}
+	}
 	return eachLandmark(r.ctx, r.net, landmarkCount, r.opt.Unmatched, func(potential []float64) {
 		r.raise(heightsOn(potential, r.compared))
 	})
