@@ -38,11 +38,13 @@ const (
 	// whole is the number of neighbours up to which elimination is exact where
 	// it cannot be exact throughout.
 	whole = 24
-	// effort is how many new edges an exact elimination may make, beside some
-	// for each node and edge, and densest how many nodes may be left then, to
-	// be eliminated as a full matrix. Road networks of a hundred thousand nodes
-	// stay within; past it, a solve takes ten to twenty steps on the core.
-	effort  = 40_000_000
+	// effort is how many new edges an exact elimination may make for each node
+	// and edge, most in all, and densest how many nodes may be left when it
+	// stops, or when all of them are about to be neighbours, to be eliminated
+	// as a full matrix. Road networks of a hundred thousand nodes stay within;
+	// past it, a solve takes five to ten steps on the core.
+	effort  = 300
+	most    = 45_000_000
 	densest = 1400
 )
 
@@ -88,11 +90,15 @@ func eliminateUpTo(whole, n int, from, to []int32, weight []float64) *factor {
 		e.queue.set(int32(v), len(e.half[v]))
 	}
 	for v := e.queue.next(); v != none; v = e.queue.next() {
-		e.remove(v)
-		if whole == n && e.spent > effort+20*(n+len(from)) {
-			if left := n - len(e.f.order); left > densest {
-				return nil
-			}
+		degree := e.remove(v)
+		if whole < n {
+			continue
+		}
+		left, late := n-len(e.f.order), e.spent > min(most, effort*(n+len(from)))
+		if late && left > densest {
+			return nil
+		}
+		if late || left <= densest && 2*degree > left {
 			e.dense()
 			break
 		}
@@ -152,8 +158,9 @@ func (e *eliminator) sweep(v int32) []half {
 	return list
 }
 
-// remove eliminates v: its column, and edges between its neighbours.
-func (e *eliminator) remove(v int32) {
+// remove eliminates v: its column, and edges between its neighbours, of which it
+// returns the number.
+func (e *eliminator) remove(v int32) (degree int) {
 	list := e.sweep(v)
 	e.gone[v] = true
 	f := e.f
@@ -170,7 +177,7 @@ func (e *eliminator) remove(v int32) {
 	f.start = append(f.start, len(f.row))
 	if len(list) == 0 {
 		f.inverse = append(f.inverse, 0)
-		return
+		return 0
 	}
 	f.inverse = append(f.inverse, 1/sum)
 	if len(list) <= e.whole {
@@ -190,6 +197,7 @@ func (e *eliminator) remove(v int32) {
 		e.queue.set(h.to, e.live[h.to])
 	}
 	e.half[v] = nil
+	return len(list)
 }
 
 func (e *eliminator) join(u, v int32, w float64) {
