@@ -193,90 +193,61 @@ func (s *session) rank(args []string) error {
 	set.running()
 	set.results("")
 	set.method = "certified"
-	rest, err := set.parse(args)
-	if err != nil {
+	j, err := s.open(set, args, func(rest []string) error {
+		switch {
+		case len(rest) != 1:
+			return usageError{fmt.Sprintf("%s named; want one: barrow rank Q", several(len(rest), "sample"))}
+		case set.samples == "" && set.from == "":
+			return usageError{"no samples: want --samples FILE, or --from DIR of an earlier run"}
+		case set.goal.top < 1:
+			return usageError{fmt.Sprintf("--top %d; want 1 or more", set.goal.top)}
+		}
+		return nil
+	})
+	if j == nil || err != nil {
 		return err
 	}
-	recorded, rest, err := s.settle(set, rest)
-	if err != nil {
+	defer j.f.discard()
+	if err := j.d.severalSamples(set); err != nil {
 		return err
 	}
-	if len(rest) != 1 {
-		return usageError{fmt.Sprintf("%s named; want one: barrow rank Q", several(len(rest), "sample"))}
-	}
-	if set.samples == "" && set.from == "" {
-		return usageError{"no samples: want --samples FILE, or --from DIR of an earlier run"}
-	}
-	if set.goal.top < 1 {
-		return usageError{fmt.Sprintf("--top %d; want 1 or more", set.goal.top)}
-	}
-	s.progress.progressTo(s.stderr)
-	d, err := s.load(set)
-	if err != nil {
-		return err
-	}
-	query, ok := d.samples.Index(rest[0])
+	samples := j.d.samples
+	query, ok := samples.Index(j.rest[0])
 	if !ok {
-		return oneFault(set.samples, fmt.Sprintf("no sample %q%s", rest[0], didYouMean(rest[0], d.samples.Names())), "a name like "+exampleNames(d.samples))
-	}
-	if d.samples.Len() < 2 {
-		return oneFault(set.samples, several(d.samples.Len(), "sample"), "two samples or more to compare")
-	}
-	if recorded != nil {
-		if err := recorded.sameFiles(d.inputs); err != nil {
-			return err
-		}
-	}
-	rec := s.newRecord(set, rest, d)
-	keep := set.out != "" || recorded != nil
-	var f *folder
-	if keep {
-		same := false
-		f, same, err = openFolder(set.out, set.replace, rec)
-		defer f.discard()
-		if same || err != nil {
-			return s.already(set, err)
-		}
+		return oneFault(set.samples, fmt.Sprintf("no sample %q%s", j.rest[0], didYouMean(j.rest[0], samples.Names())), "a name like "+exampleNames(samples))
 	}
 	opt, err := s.options(set)
 	if err != nil {
 		return err
 	}
-	opt.Known = d.known
-	list, certificate, err := pairwise.Rank(s.ctx, d.net, d.samples, query, set.goal.top, opt)
+	opt.Known = j.d.known
+	list, certificate, err := pairwise.Rank(s.ctx, j.d.net, samples, query, set.goal.top, opt)
 	if err != nil {
 		return err
 	}
-	s.progress.end()
-	show := func(w io.Writer) {
-		fmt.Fprintf(w, "network   %s\n", networkLine(d.net))
-		fmt.Fprintf(w, "nearest   to %s, of %s; no other sample is nearer, proved with %s solved:\n", rest[0], several(certificate.Pairs, "other sample"), several(certificate.Solved, "pair"))
+	j.rec.Counts["solved"] = certificate.Solved
+	write := func(f *folder) error {
+		return f.write("ranking.csv", func(w *bufio.Writer) error { return writeRanking(w, samples.Names(), list) })
+	}
+	return j.finish(write, func(w io.Writer) {
+		fmt.Fprintf(w, "network   %s\n", networkLine(j.d.net))
+		fmt.Fprintf(w, "nearest   to %s, of %s; no other sample is nearer, proved with %s solved:\n", j.rest[0], several(certificate.Pairs, "other sample"), several(certificate.Solved, "pair"))
 		for k, x := range list {
-			fmt.Fprintf(w, "%9d  %s  %s\n", k+1, human(x.Distance), d.samples.At(x.Sample).Name)
+			fmt.Fprintf(w, "%9d  %s  %s\n", k+1, human(x.Distance), samples.At(x.Sample).Name)
+		}
+	})
+}
+
+func writeRanking(w *bufio.Writer, names []string, list []pairwise.Neighbour) error {
+	names = quoted(names)
+	r := &row{w: w}
+	if err := r.text("rank,sample,distance,lower,upper").end(); err != nil {
+		return err
+	}
+	for k, x := range list {
+		if err := r.text(fmt.Sprint(k + 1)).text(names[x.Sample]).number(x.Distance).number(x.Lower).number(x.Upper).end(); err != nil {
+			return err
 		}
 	}
-	if !keep {
-		show(s.stdout)
-		return nil
-	}
-	rec.Counts["solved"] = certificate.Solved
-	err = s.phases.Time("write", func() error {
-		return f.write("ranking.csv", func(w *bufio.Writer) error {
-			r := &row{w: w}
-			if err := r.text("rank,sample,distance,lower,upper").end(); err != nil {
-				return err
-			}
-			for k, x := range list {
-				r.text(fmt.Sprint(k + 1)).text(quoted([]string{d.samples.At(x.Sample).Name})[0]).number(x.Distance).number(x.Lower).number(x.Upper)
-				if err := r.end(); err != nil {
-					return err
-				}
-			}
-			return nil
-		})
-	})
-	if err != nil {
-		return err
-	}
-	return s.close(f, rec, recorded, show)
+	return nil
 }

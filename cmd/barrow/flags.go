@@ -115,18 +115,20 @@ func (set *settings) check() error {
 	if set.edges == "" && set.test.distances == "" {
 		return usageError{"no network: want --edges FILE"}
 	}
+	if has("mass") {
+		if err := oneOf("--mass", set.mass, "share", "amount"); err != nil {
+			return err
+		}
+		if !(set.unmatched >= 0) || math.IsInf(set.unmatched, 0) {
+			return usageError{fmt.Sprintf("--unmatched %v; want a cost of 0 or more (0: no mass is created or removed)", set.unmatched)}
+		}
+	}
 	if has("method") {
 		if set.samples == "" && set.test.distances == "" {
 			return usageError{"no samples: want --samples FILE"}
 		}
 		if err := oneOf("--method", set.method, set.methods()...); err != nil {
 			return err
-		}
-		if err := oneOf("--mass", set.mass, "share", "amount"); err != nil {
-			return err
-		}
-		if !(set.unmatched >= 0) || math.IsInf(set.unmatched, 0) {
-			return usageError{fmt.Sprintf("--unmatched %v; want a cost of 0 or more (0: no mass is created or removed)", set.unmatched)}
 		}
 		if set.unmatched > 0 && !movesMass(set.method) {
 			return usageError{fmt.Sprintf("--unmatched with --method %s; want a method that moves mass, like multiscale or exact", set.method)}

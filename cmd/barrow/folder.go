@@ -79,7 +79,7 @@ func (f *folder) claim(above string) error {
 	lock := flock.New(filepath.Join(above, "."+base+".lock"))
 	got, err := lock.TryLock()
 	if err != nil {
-		return err
+		return fmt.Errorf("results cannot go to %s (%w); want an --out in a folder that can be written to", f.typed, err)
 	}
 	if !got {
 		return fmt.Errorf("%s: another run is at work on it; wait for it to end, or give another --out", f.typed)

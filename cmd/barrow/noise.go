@@ -56,51 +56,27 @@ func (s *session) noise(args []string) error {
 	set.running()
 	set.results("noise")
 	set.method = "multiscale"
-	rest, err := set.parse(args)
-	if err != nil {
-		return err
-	}
-	recorded, rest, err := s.settle(set, rest)
-	if err != nil {
-		return err
-	}
-	if len(rest) > 0 {
-		return usageError{fmt.Sprintf("%q, where only flags are taken", rest[0])}
-	}
-	if set.samples == "" {
-		return usageError{"no samples: want --samples FILE"}
-	}
-	if err := set.noise.check(set); err != nil {
-		return err
-	}
-	s.progress.progressTo(s.stderr)
-	d, err := s.load(set)
-	if err != nil {
-		return err
-	}
-	if d.samples.Len() < 2 {
-		return oneFault(set.samples, several(d.samples.Len(), "sample"), "two samples or more to compare")
-	}
-	if recorded != nil {
-		if err := recorded.sameFiles(d.inputs); err != nil {
+	j, err := s.open(set, args, func(rest []string) error {
+		if err := flagsOnly(rest); err != nil {
 			return err
 		}
+		if set.samples == "" {
+			return usageError{"no samples: want --samples FILE"}
+		}
+		return set.noise.check(set)
+	})
+	if j == nil || err != nil {
+		return err
 	}
-	rec := s.newRecord(set, nil, d)
-	f, same, err := openFolder(set.out, set.replace, rec)
-	defer f.discard()
-	if same || err != nil {
-		return s.already(set, err)
+	defer j.f.discard()
+	if err := j.d.severalSamples(set); err != nil {
+		return err
 	}
-	n, err := s.count(set, d, rec)
+	n, err := s.count(set, j.d, j.rec)
 	if err != nil {
 		return err
 	}
-	s.progress.end()
-	if err := s.phases.Time("write", func() error { return n.write(f, set) }); err != nil {
-		return err
-	}
-	return s.close(f, rec, recorded, func(w io.Writer) { n.summary(w, set, d) })
+	return j.finish(func(f *folder) error { return n.write(f, set) }, func(w io.Writer) { n.summary(w, set, j.d) })
 }
 
 // noiseResult is what noise makes of the pairs.

@@ -40,54 +40,29 @@ func (s *session) shape(args []string) error {
 	set.flags.Uint64Var(&set.seed, "seed", 1, "")
 	set.running()
 	set.results("shape")
-	rest, err := set.parse(args)
-	if err != nil {
+	j, err := s.open(set, args, func(rest []string) error {
+		if err := flagsOnly(rest); err != nil {
+			return err
+		}
+		return oneOf("--linkage", sh.linkage, "average", "complete", "single", "ward")
+	})
+	if j == nil || err != nil {
 		return err
 	}
-	recorded, rest, err := s.settle(set, rest)
-	if err != nil {
-		return err
-	}
-	if len(rest) > 0 {
-		return usageError{fmt.Sprintf("%q, where only flags are taken", rest[0])}
-	}
-	if err := oneOf("--linkage", sh.linkage, "average", "complete", "single", "ward"); err != nil {
-		return err
-	}
-	s.progress.progressTo(s.stderr)
-	d, err := s.load(set)
-	if err != nil {
-		return err
-	}
-	if recorded != nil {
-		if err := recorded.sameFiles(d.inputs); err != nil {
+	defer j.f.discard()
+	c := &collection{matrix: j.d.distances, flags: sh}
+	if c.matrix == nil {
+		if c.matrix, err = s.distances(set, j.d, j.rec); err != nil {
 			return err
 		}
 	}
-	rec := s.newRecord(set, nil, d)
-	f, same, err := openFolder(set.out, set.replace, rec)
-	defer f.discard()
-	if same || err != nil {
-		return s.already(set, err)
-	}
-	m := d.distances
-	if m == nil {
-		if m, err = s.distances(set, d, rec); err != nil {
-			return err
-		}
-	}
-	c := &collection{matrix: m, flags: sh}
-	if c.reference, err = sh.reference(d, m.Names); err != nil {
+	if c.reference, err = sh.reference(j.d, c.matrix.Names); err != nil {
 		return err
 	}
 	if err := s.phases.Time("shape", c.find); err != nil {
 		return err
 	}
-	s.progress.end()
-	if err := s.phases.Time("write", func() error { return c.write(f) }); err != nil {
-		return err
-	}
-	return s.close(f, rec, recorded, c.summary)
+	return j.finish(c.write, c.summary)
 }
 
 // A collection is what a matrix looks like as a whole.

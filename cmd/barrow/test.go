@@ -83,50 +83,26 @@ func (s *session) testSamples(args []string) error {
 	set.flags.Uint64Var(&set.seed, "seed", 1, "")
 	set.running()
 	set.results("tests")
-	rest, err := set.parse(args)
-	if err != nil {
-		return err
-	}
-	recorded, rest, err := s.settle(set, rest)
-	if err != nil {
-		return err
-	}
-	if len(rest) > 0 {
-		return usageError{fmt.Sprintf("%q, where only flags are taken", rest[0])}
-	}
-	if err := set.test.check(set); err != nil {
-		return err
-	}
-	s.progress.progressTo(s.stderr)
-	d, err := s.load(set)
-	if err != nil {
-		return err
-	}
-	if recorded != nil {
-		if err := recorded.sameFiles(d.inputs); err != nil {
+	j, err := s.open(set, args, func(rest []string) error {
+		if err := flagsOnly(rest); err != nil {
 			return err
 		}
+		return set.test.check(set)
+	})
+	if j == nil || err != nil {
+		return err
 	}
-	rec := s.newRecord(set, nil, d)
-	f, same, err := openFolder(set.out, set.replace, rec)
-	defer f.discard()
-	if same || err != nil {
-		return s.already(set, err)
-	}
-	t := &tester{session: s, set: set, d: d, distances: d.distances}
+	defer j.f.discard()
+	t := &tester{session: s, set: set, d: j.d, distances: j.d.distances}
 	if t.distances == nil {
-		if t.distances, err = s.distances(set, d, rec); err != nil {
+		if t.distances, err = s.distances(set, j.d, j.rec); err != nil {
 			return err
 		}
 	}
 	if err := s.phases.Time("test", t.run); err != nil {
 		return err
 	}
-	s.progress.end()
-	if err := s.phases.Time("write", func() error { return t.write(f) }); err != nil {
-		return err
-	}
-	return s.close(f, rec, recorded, t.summary)
+	return j.finish(t.write, t.summary)
 }
 
 // distances makes the matrix by the chosen method.
