@@ -101,6 +101,9 @@ func (s *session) count(set *settings, d *data, rec *record) (*noiseResult, erro
 	if opt.Calibrate == 0 {
 		return nil, usageError{"--calibrate 0; want auto or some pairs: noise is told in the unit of length"}
 	}
+	if parts := massParts(d); parts > 1 && set.unmatched == 0 {
+		return nil, usageError{fmt.Sprintf("the samples have mass in %d parts of the network, and counting noise moves mass between them; want --bridge LENGTH, or --mass amount --unmatched COST", parts)}
+	}
 	opt.KeepVectors = true
 	r, err := pairwise.Multiscale(s.ctx, d.net, d.samples, opt)
 	if err != nil {
@@ -128,6 +131,22 @@ func (s *session) count(set *settings, d *data, rec *record) (*noiseResult, erro
 	}
 	n.adjusted = inference.BenjaminiHochberg(n.P)
 	return n, nil
+}
+
+// massParts is how many parts of the network hold mass of some sample.
+func massParts(d *data) int {
+	label, count := d.net.Components()
+	held := make([]bool, count)
+	parts := 0
+	for i := range d.samples.Len() {
+		for _, v := range d.samples.At(i).Nodes {
+			if c := label[v]; !held[c] {
+				held[c] = true
+				parts++
+			}
+		}
+	}
+	return parts
 }
 
 func dispersionOf(set *settings, d *data) (float64, error) {

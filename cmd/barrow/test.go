@@ -118,7 +118,24 @@ func (s *session) distances(set *settings, d *data, rec *record) (*pairwise.Matr
 	defer r.Vectors.Close()
 	rec.Counts["pairs"] = pairCount(d)
 	rec.Choices = choicesOf(r)
-	return r.Matrix, nil
+	if !r.Matrix.Directed {
+		return r.Matrix, nil
+	}
+	const text = "distances differ by direction on this one-way network; the mean of both is taken"
+	s.note(text)
+	rec.Warnings = append(rec.Warnings, text)
+	return undirected(r.Matrix), nil
+}
+
+// undirected is the mean of the distances there and back.
+func undirected(m *pairwise.Matrix) *pairwise.Matrix {
+	mean := &pairwise.Matrix{Names: m.Names}
+	for i := range m.Names {
+		for j := i + 1; j < len(m.Names); j++ {
+			mean.Value = append(mean.Value, (m.At(i, j)+m.At(j, i))/2)
+		}
+	}
+	return mean
 }
 
 // A tester gathers what the tests gave.
