@@ -72,3 +72,28 @@ func (h *Hierarchy) between(from, to int) []int32 {
 	}
 	return m
 }
+
+// Districts groups the nodes of a network into at most a few dozen aggregates
+// that mass mixes well within, those of the coarsest level: a label a node, and
+// for each the node with the largest capacity. A component is never divided
+// between districts of another. Cost: that of NewHierarchy.
+func (h *Hierarchy) Districts() (label []int32, middle []int32) {
+	top := len(h.walks) - 1
+	label = make([]int32, h.walks[0].Order())
+	middle = make([]int32, h.walks[top].Order())
+	for d := range middle {
+		middle[d] = -1
+	}
+	capacity := h.walks[0].capacity
+	for v := range label {
+		d := int32(v)
+		for level := range top {
+			d = h.parent[level][d]
+		}
+		label[v] = d
+		if m := middle[d]; m < 0 || capacity[v] > capacity[m] {
+			middle[d] = int32(v)
+		}
+	}
+	return label, middle
+}

@@ -20,7 +20,7 @@ import (
 // resultFiles are all that a results folder may hold of barrow; the record comes
 // last.
 var resultFiles = []string{
-	"matrix.csv", "pairs.csv", "calibration.csv", "calibration.json", "vectors.npy", "vectors.json", "flows.csv", "potentials.csv", "unmatched.csv",
+	"matrix.csv", "pairs.csv", "calibration.csv", "calibration.json", "vectors.npy", "vectors.json", "flows.csv", "potentials.csv", "unmatched.csv", "districts.csv", "corridors.csv",
 	"tests.csv", "comparisons.csv", "where.csv", "noise.csv", "map.csv", "tree.nwk", "clusters.csv", "outliers.csv", "ranking.csv", recordFile,
 }
 

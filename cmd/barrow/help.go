@@ -181,6 +181,13 @@ Results
                                            more than the length along any edge, and
                                            the sum of potential times (A - B) is the
                                            lower bound
+                          districts.csv    from,to,mass,cost: what moves from
+                                           district to district; the costs add
+                                           up to the distance. Without a column
+                                           district in --nodes, parts of the
+                                           network that barrow finds
+                          corridors.csv    corridor,step,node,mass,length: the ten
+                                           heaviest paths of edges
                           unmatched.csv    node,removed (--unmatched; created
                                            where below 0)
                           run.json         what was run, on what, and what it took

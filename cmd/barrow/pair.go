@@ -55,6 +55,7 @@ type comparison struct {
 	distance, lower, upper float64       // NaN bounds where none are known
 	proof                  *exact.Result // nil unless exact
 	late                   bool          // the time limit came before the optimum
+	why                    *explanation  // nil unless exact and with a flow
 	potential              []float64     // nil where there is none
 }
 
@@ -90,6 +91,9 @@ func (s *session) compare(set *settings, d *data, names []string, recorded *reco
 		return nil, err
 	}
 	s.progress.end()
+	if c.proof != nil && !math.IsInf(c.upper, 1) {
+		c.why = explain(d.net, c.proof)
+	}
 	rec.Counts["pairs"] = 1
 	if c.late {
 		rec.Warnings = append(rec.Warnings, lateWarning)
@@ -240,7 +244,10 @@ func (f *folder) writeComparison(d *data, method string, c *comparison) error {
 	case err != nil:
 		return err
 	case c.proof != nil:
-		return f.writeProof(d.net, c.proof)
+		if err := f.writeProof(d.net, c.proof); err != nil {
+			return err
+		}
+		return c.why.write(f, d.net)
 	case c.potential != nil:
 		return f.writePotential(d.net, c.potential)
 	}
@@ -274,6 +281,9 @@ func (c *comparison) summary(w io.Writer, set *settings, d *data) {
 	}
 	if c.proof != nil {
 		c.heaviest(w, set, d.net)
+	}
+	if c.why != nil {
+		c.why.summary(w, set, d.net)
 	}
 }
 
