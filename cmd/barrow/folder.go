@@ -21,7 +21,7 @@ import (
 // last.
 var resultFiles = []string{
 	"matrix.csv", "pairs.csv", "calibration.csv", "calibration.json", "vectors.npy", "vectors.json", "flows.csv", "potentials.csv", "unmatched.csv", "districts.csv", "corridors.csv",
-	"tests.csv", "comparisons.csv", "where.csv", "noise.csv", "map.csv", "tree.nwk", "clusters.csv", "outliers.csv", "ranking.csv", recordFile,
+	"tests.csv", "comparisons.csv", "where.csv", "noise.csv", "map.csv", "tree.nwk", "clusters.csv", "outliers.csv", "ranking.csv", "series.csv", "breaks.csv", recordFile,
 }
 
 // A folder takes results. They are written to a hidden folder beside it and

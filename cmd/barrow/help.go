@@ -16,6 +16,7 @@ Commands
   test       do groups of samples differ by more than chance, and where
   noise      which distances are more than counting noise
   shape      a map, a tree and groups of the samples
+  series     samples in order: steps, path, and where they break
   demo DIR   write an invented town and run the main job on it
   help       this text; barrow help COMMAND or barrow COMMAND --help for more
   version    which barrow this is
@@ -337,6 +338,33 @@ Example
 Results
   --out DIR             where they go; without it nothing is written:
                           ranking.csv      rank,sample,distance,lower,upper
+                          run.json         what was run, on what
+  --replace             write over results of another run in DIR
+`
+
+const seriesHelp = `barrow series follows samples in the order of their file, hours or stages: how far
+from each to the next and to the first, and where the series breaks.
+
+Example
+  barrow series --edges harbour/edges.csv --samples harbour/samples.csv --least 24 --out course
+` + inputHelp + `
+  --distances FILE      instead of these: a matrix.csv, in the order of the series
+
+Series
+  --reference NAME      also the distance of every sample to this one
+  --least N             a stretch without a break has N samples or more; 5
+  --level P             a break is called at this level, 0.05 by default, by
+                        shuffling samples within stretches (Matteson & James 2014)
+  --permutations N      199 by default
+  --method NAME         how distances are made, see barrow help matrix
+  --calibrate N|auto    pairs solved exactly for multiscale
+  --seed N              other permutations and pairs; 1 by default
+` + comparisonHelp + runHelp + replayHelp + `
+Results
+  --out DIR             series by default:
+                          series.csv       sample,to_next,from_first,
+                                           from_reference,path
+                          breaks.csv       before,after,statistic,p,p_error
                           run.json         what was run, on what
   --replace             write over results of another run in DIR
 `

@@ -64,6 +64,7 @@ var commands = []struct {
 	{"test", testHelp, (*session).testSamples},
 	{"noise", noiseHelp, (*session).noise},
 	{"shape", shapeHelp, (*session).shape},
+	{"series", seriesHelp, (*session).series},
 	{"demo", demoHelp, (*session).demo},
 }
 

@@ -254,7 +254,7 @@ func TestHelpIsTrue(t *testing.T) {
 		t.Errorf("%d examples for %d commands", examples, len(commands))
 	}
 	for command, flags := range map[string][]string{"matrix": recordedFlags(t, "town"), "pair": recordedFlags(t, "bridge"),
-		"test": recordedFlags(t, "weeks"), "noise": recordedFlags(t, "noise"), "shape": recordedFlags(t, "shape")} {
+		"test": recordedFlags(t, "weeks"), "noise": recordedFlags(t, "noise"), "shape": recordedFlags(t, "shape"), "series": recordedFlags(t, "course")} {
 		help, _, _ := call("help", command)
 		for _, f := range append(flags, "out", "replace", "replay") {
 			if !strings.Contains(help, "--"+f) {
