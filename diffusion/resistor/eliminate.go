@@ -73,8 +73,10 @@ type eliminator struct {
 // give the same factor. It is exact if that takes no more than effort.
 // Cost: about O(edges log edges) where degrees are small.
 func eliminate(n int, from, to []int32, weight []float64) *factor {
-	if f := eliminateUpTo(n, n, from, to, weight); f != nil {
-		return f
+	if effort*(n+len(from)) <= 2*most { // else it would hardly come to an end
+		if f := eliminateUpTo(n, n, from, to, weight); f != nil {
+			return f
+		}
 	}
 	return eliminateUpTo(whole, n, from, to, weight)
 }
