@@ -227,3 +227,17 @@ func TestCheckConnected(t *testing.T) {
 		}
 	}
 }
+
+func TestMean(t *testing.T) {
+	list := []graphio.Sample{{Nodes: []int32{0, 2}, Values: []float64{1, 3}}, {Nodes: []int32{2}, Values: []float64{5}}}
+	m := graphio.Mean("m", 3, list, nil)
+	if m.Name != "m" || !slices.Equal(m.Nodes, []int32{0, 2}) || !slices.Equal(m.Values, []float64{0.5, 4}) {
+		t.Errorf("%+v", m)
+	}
+	if m = graphio.Mean("m", 3, list, []float64{3, 1}); !slices.Equal(m.Values, []float64{0.75, 3.5}) {
+		t.Errorf("%+v", m)
+	}
+	if m = graphio.Mean("m", 3, list, []float64{0, 2}); !slices.Equal(m.Nodes, []int32{2}) || m.Values[0] != 5 {
+		t.Errorf("%+v", m)
+	}
+}

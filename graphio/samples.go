@@ -146,3 +146,28 @@ func (s *Samples) Shares() (*Samples, error) {
 	}
 	return shares, faults.Err()
 }
+
+// Mean is the mean of samples over the same nodes, weighted: weights nil are
+// equal; each sample counts by weight over the sum of all. Order is the number
+// of nodes. Cost: O(order + entries).
+func Mean(name string, order int, list []Sample, weights []float64) Sample {
+	sum := make([]float64, order)
+	whole := 0.0
+	for i, s := range list {
+		w := 1.0
+		if weights != nil {
+			w = weights[i]
+		}
+		if w > 0 {
+			s.Dense(sum, w)
+			whole += w
+		}
+	}
+	mean := Sample{Name: name}
+	for v, x := range sum {
+		if x > 0 {
+			mean.Nodes, mean.Values = append(mean.Nodes, int32(v)), append(mean.Values, x/whole)
+		}
+	}
+	return mean
+}

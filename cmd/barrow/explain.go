@@ -18,6 +18,7 @@ type explanation struct {
 	movements []exact.Movement
 	transfers []exact.Transfer
 	corridors []exact.Corridor
+	districts []string // of every node
 	stayed    float64
 	found     bool // the districts are those of the network, not of the user
 }
@@ -31,6 +32,7 @@ func explain(net *graphio.Network, r *exact.Result) *explanation {
 		district = foundDistricts(net)
 		e.found = true
 	}
+	e.districts = district
 	e.transfers = exact.Between(e.movements, district, outsideName)
 	return e
 }
@@ -49,15 +51,24 @@ func foundDistricts(net *graphio.Network) []string {
 	return list
 }
 
-func (e *explanation) write(f *folder, net *graphio.Network) error {
+func (e *explanation) write(f *folder, net *graphio.Network, s *redrawn) error {
 	err := f.write("districts.csv", func(w *bufio.Writer) error {
 		r := &row{w: w}
-		if err := r.text("from,to,mass,cost").end(); err != nil {
+		r.text("from,to,mass,cost")
+		if s != nil {
+			r.text("cost_low,cost_high")
+		}
+		if err := r.end(); err != nil {
 			return err
 		}
-		for _, t := range e.transfers {
+		for k, t := range e.transfers {
 			names := quoted([]string{t.From, t.To})
-			if err := r.text(names[0]).text(names[1]).number(t.Mass).number(t.Cost).end(); err != nil {
+			r.text(names[0]).text(names[1]).number(t.Mass).number(t.Cost)
+			if s != nil {
+				low, high := interval(s.costs[k])
+				r.number(low).number(high)
+			}
+			if err := r.end(); err != nil {
 				return err
 			}
 		}

@@ -32,7 +32,9 @@ type settings struct {
 	timeLimit               time.Duration
 	test                    testFlags
 	noise                   noiseFlags
-	noisy                   bool // matrix --noise
+	noisy                   bool   // matrix --noise
+	by                      string // pair: a column of groups
+	draws                   int    // pair: of its samples
 	goal                    goalFlags
 	from                    string  // the results folder of an earlier run
 	earlier                 *stored // the same, read

@@ -167,6 +167,12 @@ Method
            multiscale   uncalibrated estimate, and a proved lower bound
            kernel       maximum mean discrepancy under heat kernels; no unit
            variation    half the sum of differences, blind to where nodes lie
+  --groups FILE --by COLUMN
+                        A and B are labels of this column: compare the means of
+                        the two groups, with a 95 % interval from redrawing their
+                        samples
+  --draws N             redrawings; 199 by default
+  --seed N              other redrawings; 1 by default
   --gap G               let exact stop once (upper - lower) / upper is at most G,
                         like 0.01; 0, the default, goes on to the end
   --time-limit T        let exact stop after T, like 90s or 5m, and report the
@@ -182,7 +188,8 @@ Results
                                            more than the length along any edge, and
                                            the sum of potential times (A - B) is the
                                            lower bound
-                          districts.csv    from,to,mass,cost: what moves from
+                          districts.csv    from,to,mass,cost[,cost_low,cost_high]:
+                                           what moves from
                                            district to district; the costs add
                                            up to the distance. Without a column
                                            district in --nodes, parts of the

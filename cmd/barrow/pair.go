@@ -26,6 +26,10 @@ func (s *session) makePair(args []string) (*comparison, error) {
 	set.comparison("exact")
 	set.flags.Float64Var(&set.gap, "gap", 0, "")
 	set.flags.DurationVar(&set.timeLimit, "time-limit", 0, "")
+	set.flags.StringVar(&set.groups, "groups", "", "")
+	set.flags.StringVar(&set.by, "by", "", "")
+	set.flags.IntVar(&set.draws, "draws", 199, "")
+	set.flags.Uint64Var(&set.seed, "seed", 1, "")
 	set.results("")
 	rest, err := set.parse(args)
 	if err != nil {
@@ -37,6 +41,12 @@ func (s *session) makePair(args []string) (*comparison, error) {
 	}
 	if len(rest) != 2 {
 		return nil, usageError{fmt.Sprintf("%s named; want two: barrow pair A B", several(len(rest), "sample"))}
+	}
+	switch {
+	case (set.by == "") != (set.groups == ""):
+		return nil, usageError{"--by and --groups go together; want --groups FILE --by COLUMN to compare group means"}
+	case set.by != "" && (set.method != "exact" || set.draws < 19):
+		return nil, usageError{"group means want --method exact, and --draws of 19 or more"}
 	}
 	s.progress.progressTo(s.stderr)
 	d, err := s.load(set)
@@ -56,6 +66,7 @@ type comparison struct {
 	proof                  *exact.Result // nil unless exact
 	late                   bool          // the time limit came before the optimum
 	why                    *explanation  // nil unless exact and with a flow
+	redrawn                *redrawn      // nil unless of group means
 	potential              []float64     // nil where there is none
 }
 
@@ -67,7 +78,14 @@ func (s *session) compare(set *settings, d *data, names []string, recorded *reco
 			return nil, err
 		}
 	}
-	p, q, err := chosen(set, d, names)
+	var p, q graphio.Sample
+	var m *means
+	var err error
+	if set.by != "" {
+		p, q, m, err = groupMeans(set, d, names)
+	} else {
+		p, q, err = chosen(set, d, names)
+	}
 	if err != nil {
 		return nil, err
 	}
@@ -93,6 +111,16 @@ func (s *session) compare(set *settings, d *data, names []string, recorded *reco
 	s.progress.end()
 	if c.proof != nil && !math.IsInf(c.upper, 1) {
 		c.why = explain(d.net, c.proof)
+	}
+	if m != nil && c.why != nil {
+		err := s.phases.Time("resample", func() error {
+			c.redrawn, err = s.resample(set, d, m, c.why)
+			return err
+		})
+		if err != nil {
+			return nil, err
+		}
+		s.progress.end()
 	}
 	rec.Counts["pairs"] = 1
 	if c.late {
@@ -247,7 +275,7 @@ func (f *folder) writeComparison(d *data, method string, c *comparison) error {
 		if err := f.writeProof(d.net, c.proof); err != nil {
 			return err
 		}
-		return c.why.write(f, d.net)
+		return c.why.write(f, d.net, c.redrawn)
 	case c.potential != nil:
 		return f.writePotential(d.net, c.potential)
 	}
@@ -266,6 +294,9 @@ func (c *comparison) summary(w io.Writer, set *settings, d *data) {
 		fmt.Fprintf(w, "distance  %s to %s, %s\n", human(c.lower), human(c.upper), c.meaning(set))
 	} else {
 		fmt.Fprintf(w, "distance  %s, %s\n", human(c.distance), c.meaning(set))
+	}
+	if c.redrawn != nil {
+		c.redrawn.summary(w)
 	}
 	switch {
 	case c.late && set.timeLimit > 0:

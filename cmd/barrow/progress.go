@@ -19,6 +19,7 @@ var stageText = map[string]string{
 	"estimate":  "pairs estimated",
 	"exact":     "pairs solved exactly",
 	"noise":     "draws of noise",
+	"resample":  "redrawings of the groups",
 }
 
 // progress shows one bar a stage, on a terminal only.
