@@ -41,10 +41,10 @@ type CalibrationPair struct {
 // DefaultPairs is how many pairs of samples are solved to calibrate: 200, or
 // half of all where those are fewer, and on networks of more than 20,000
 // nodes fewer in proportion, as solving takes longer; but not below 40, and on
-// networks of more than 100,000 nodes not below 10.
+// networks of more than 100,000 nodes not below 12.
 func DefaultPairs(samples, nodes int, directed bool) int {
 	all := pairCount(samples, directed)
-	most := min(200, max(10, 4_000_000/max(nodes, 1)))
+	most := min(200, max(12, 4_000_000/max(nodes, 1)))
 	return min(all, max(min(40, most), min(most, all/2)))
 }
 

@@ -81,7 +81,7 @@ func TestDefaultPairs(t *testing.T) {
 		want           int
 	}{ // by hand from the rule stated at DefaultPairs
 		{2, 10, false, 1}, {3, 10, true, 6}, {10, 100, false, 40}, {30, 100, false, 200},
-		{336, 2000, false, 200}, {1000, 100000, false, 40}, {1000, 40000, false, 100}, {200, 1000000, false, 10},
+		{336, 2000, false, 200}, {1000, 100000, false, 40}, {1000, 40000, false, 100}, {200, 1000000, false, 12},
 	} {
 		if got := DefaultPairs(c.samples, c.nodes, c.directed); got != c.want {
 			t.Errorf("%d samples on %d nodes: %d pairs, want %d", c.samples, c.nodes, got, c.want)
