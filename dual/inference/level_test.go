@@ -11,7 +11,10 @@ import (
 // sets (there are many designs); benchmarks/inference counts 1,000 each, at 1 %
 // too.
 func TestLevels(t *testing.T) {
-	const sets = 120
+	sets := 120
+	if testing.Short() { // under the race detector, which looks for other things
+		sets = 12
+	}
 	for _, d := range nulls.Designs() {
 		called := 0
 		for seed := range uint64(sets) {
