@@ -48,6 +48,17 @@ func (c columns) at(name string) int {
 	return -1
 }
 
+// once refuses a second column of the name of one that is read: which of them
+// is meant would be a guess.
+func (t *table) once(c columns, read ...int) error {
+	for i, h := range t.header {
+		if at := c.at(lower(h)); at != i && slices.Contains(read, at) {
+			return oneFault(t.fault(i, fmt.Sprintf("a second column %q", h), "each column once"))
+		}
+	}
+	return nil
+}
+
 // placeNames are the columns of a nodes file besides node.
 var placeNames = []string{"x", "y", "lon", "lat", "district"}
 

@@ -4,6 +4,7 @@ import (
 	"bufio"
 	"bytes"
 	"fmt"
+	"math"
 	"strconv"
 )
 
@@ -12,10 +13,10 @@ import (
 // general or symmetric.
 type marketReader struct {
 	*sampleReader
-	path                           string
-	scan                           *bufio.Scanner
-	line                           int
-	pattern, symmetric, coordinate bool
+	path                                    string
+	scan                                    *bufio.Scanner
+	line                                    int
+	pattern, integer, symmetric, coordinate bool
 }
 
 // maxLine is the longest line of a Matrix Market file, past the 1024 its
@@ -76,7 +77,10 @@ func (m *marketReader) banner() error {
 	const want = "%%MatrixMarket matrix, then coordinate or array, then real, integer or pattern, then general or symmetric"
 	m.next()
 	words := bytes.Fields(m.scan.Bytes())
-	if len(words) != 5 || lower(string(words[1])) != "matrix" {
+	if len(words) > 0 {
+		words[0] = bytes.TrimPrefix(words[0], []byte("\xef\xbb\xbf")) // byte order mark
+	}
+	if len(words) != 5 || string(words[0]) != "%%MatrixMarket" || lower(string(words[1])) != "matrix" {
 		return oneFault(m.fault("first line "+show(m.scan.Bytes()), want))
 	}
 	switch lower(string(words[2])) {
@@ -87,7 +91,9 @@ func (m *marketReader) banner() error {
 		return oneFault(m.fault("form "+show(words[2]), want))
 	}
 	switch lower(string(words[3])) {
-	case "real", "integer":
+	case "real":
+	case "integer":
+		m.integer = true
 	case "pattern":
 		m.pattern = true
 	default:
@@ -200,6 +206,10 @@ func (m *marketReader) value(word []byte) (float64, bool) {
 	v, found, want := m.mass(x, kind)
 	if found != "" {
 		m.faults.Add(m.fault(found+" "+show(word), want))
+		return 0, false
+	}
+	if m.integer && v != math.Trunc(v) {
+		m.faults.Add(m.fault("a value that is not whole: "+show(word), "a whole number; or real, not integer, in the first line"))
 		return 0, false
 	}
 	return v, true

@@ -67,7 +67,9 @@ func (r *sampleReader) readNPY(in *input) ([]Sample, error) {
 			}
 		}
 	}
-	if _, err := buffered.ReadByte(); err != io.EOF {
+	if _, err := buffered.ReadByte(); err != nil && err != io.EOF {
+		return nil, in.readFault(err, 0)
+	} else if err == nil {
 		r.faults.Add(Fault{File: in.path, Found: "more data than the header says", Want: fmt.Sprintf("%d × %d values", shape[0], shape[1])})
 	}
 	if err := r.faults.Err(); err != nil {

@@ -153,12 +153,7 @@ func (r *edgeReader) edgeColumns(t *table) error {
 	case r.opt.LengthFrom == "" && r.at.length < 0:
 		return t.wrongHeader("a column length")
 	}
-	for i, h := range t.header {
-		if at := c.at(lower(h)); at != i && (at == r.at.from || at == r.at.to || at == r.at.length || at == r.at.weight || at == r.at.oneway) {
-			return oneFault(t.fault(i, fmt.Sprintf("a second column %q", h), "each column once"))
-		}
-	}
-	return nil
+	return t.once(c, r.at.from, r.at.to, r.at.length, r.at.weight, r.at.oneway)
 }
 
 // edge reads a row; false where it has a fault.

@@ -20,6 +20,9 @@ func (r *edgeReader) readNodes(t *table) error {
 		}
 		return oneFault(Fault{File: t.in.path, Line: t.line, Found: "columns " + t.headerList(), Want: want})
 	}
+	if err := t.once(c, node, x, y, district); err != nil {
+		return err
+	}
 	n := t.expectedRows()
 	r.names = newNameTable(n)
 	r.known = t.in.path

@@ -49,13 +49,14 @@ func ReadSamples(path string, net *Network, opt SampleOptions) (*Samples, *Sourc
 }
 
 func (r *sampleReader) read(in *input) ([]Sample, error) {
-	head, err := in.peek(16)
+	const market, mark = "%%MatrixMarket", "\xef\xbb\xbf" // some programs put a byte order mark first
+	head, err := in.peek(len(mark + market))
 	if err != nil {
 		return nil, in.readFault(err, 0)
 	}
 	named := r.opt.RowNames != "" || r.opt.ColumnNames != ""
 	switch {
-	case bytes.HasPrefix(head, []byte("%%MatrixMarket")):
+	case bytes.HasPrefix(bytes.TrimPrefix(head, []byte(mark)), []byte(market)):
 		return r.readMatrixMarket(in)
 	case bytes.HasPrefix(head, []byte("\x93NUMPY")):
 		return r.readNPY(in)
@@ -79,6 +80,9 @@ func (r *sampleReader) read(in *input) ([]Sample, error) {
 // readLong reads a row for each value.
 func (r *sampleReader) readLong(t *table, c columns) ([]Sample, error) {
 	sample, node, value := c["sample"], c["node"], c["value"]
+	if err := t.once(c, sample, node, value); err != nil {
+		return nil, err
+	}
 	names := newNameTable(0)
 	var lines lineIndex
 	last := int32(-1)

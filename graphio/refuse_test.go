@@ -128,6 +128,7 @@ func TestRefusedNodes(t *testing.T) {
 		{"x alone", "node,x\na,1\nb,2\n", 1, 0, []string{"y"}},
 		{"no number", "node,x,y\na,1,2\nb,1,east\n", 3, 3, []string{`"east"`}},
 		{"off the globe", "node,lon,lat\na,1,2\nb,1,91\n", 3, 3, []string{`"91"`, "90"}},
+		{"x twice", "node,x,y,X\na,1,2,3\n", 1, 4, []string{`a second column "X"`}},
 		{"no nodes", "node\n", 0, 0, []string{"no nodes"}},
 	} {
 		path := put(t, "nodes.csv", c.text)
@@ -144,6 +145,7 @@ func TestRefusedSamples(t *testing.T) {
 	for _, c := range []refusal{
 		{"header only", "sample,node,value\n", 0, 0, []string{"a header and no values"}},
 		{"edges", "from,to,length\na,b,1\n", 1, 0, []string{"this looks like an edges file"}},
+		{"a column twice", "sample,node,value,value\nx,a,1,2\n", 1, 4, []string{`a second column "value"`}},
 		{"negative", "sample,node,value\nx,a,-3\n", 2, 3, []string{"-3", "0 or more"}},
 		{"infinite", "sample,node,value\nx,a,1e400\n", 2, 3, []string{"1e400"}},
 		{"no number", "sample,node,value\nx,a,many\n", 2, 3, []string{"many"}},
@@ -188,6 +190,8 @@ func TestRefusedMatrices(t *testing.T) {
 		{"more entries", head + "3 2 1\n1 1 5\n2 1 5\n", 4, 0, []string{"more entries"}},
 		{"twice", head + "3 2 2\n1 1 5\n1 1 6\n", 0, 0, []string{"two entries"}},
 		{"negative", head + "3 2 1\n1 1 -5\n", 3, 0, []string{"-5"}},
+		{"not whole", "%%MatrixMarket matrix coordinate integer general\n3 2 1\n1 1 1.5\n", 3, 0, []string{`not whole: "1.5"`}},
+		{"not the first word", "%%MatrixMarkets matrix coordinate real general\n", 1, 0, []string{"first line"}},
 		{"words", head + "3 2 1\n1 1\n", 3, 0, []string{"3 numbers"}},
 		{"absurd size", "%%MatrixMarket matrix array real general\n3 2\n1\n", 3, 0, []string{"the end of the file"}},
 		{"long line", head + "3 2 1\n" + strings.Repeat(" ", 1<<17) + "\n", 2, 0, []string{"a line of more than"}},
@@ -218,6 +222,16 @@ func TestRefusedMatrices(t *testing.T) {
 			t.Errorf("%s: accepted", name)
 		} else {
 			faults(t, name, err)
+		}
+	}
+	// What is cut within a compressed file is said to be cut, in every form.
+	array := npyText("{'descr': '|u1', 'fortran_order': False, 'shape': (3, 2), }") + "\x01\x00\x02\x00\x00\x03"
+	for form, text := range map[string]string{"market": head + "3 2 1\n1 1 5\n", "npy": array} {
+		for packing, packed := range map[string]string{"gzip": gzipped(t, text), "zstd": zstded(t, text)} {
+			_, _, err := graphio.ReadSamples(put(t, "cut", packed[:len(packed)-5]), net, opt)
+			if err == nil || !strings.Contains(err.Error(), packing+" data that ends early; want the whole file") {
+				t.Errorf("cut %s, %s: error %v", form, packing, err)
+			}
 		}
 	}
 	for _, c := range []struct{ name, rows, columns, word string }{
