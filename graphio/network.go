@@ -3,6 +3,7 @@ package graphio
 import (
 	"fmt"
 	"math"
+	"sync"
 )
 
 // An Edge joins two nodes. Length > 0 is the ground distance along it, Weight
@@ -36,6 +37,7 @@ type Network struct {
 	all      adjacency
 	out, in  adjacency // the same as all where no edge is one-way
 	directed bool
+	parts    *components
 
 	x, y       []float64 // nil without coordinates
 	geographic bool
@@ -108,6 +110,7 @@ func positive(x float64) bool { return x > 0 && x <= math.MaxFloat64 }
 
 // connect fills the three adjacencies from the edges.
 func (n *Network) connect() {
+	n.parts = &components{}
 	for _, e := range n.edges {
 		n.directed = n.directed || e.OneWay
 	}
@@ -238,10 +241,22 @@ func (n *Network) SetDistricts(district []string) error {
 // Districts names the district of each node, or is nil where there are none.
 func (n *Network) Districts() []string { return n.district }
 
+// components are the connected parts of a network, once asked for.
+type components struct {
+	find  sync.Once
+	label []int32
+	count int
+}
+
 // Components numbers the connected parts of the network, directions left
-// aside, by their first node, and says how many there are.
-// Cost: O(nodes + edges).
+// aside, by their first node, and says how many there are. label is the
+// network's own: do not change it. Cost: O(nodes + edges) the first time.
 func (n *Network) Components() (label []int32, count int) {
+	n.parts.find.Do(func() { n.parts.label, n.parts.count = n.findComponents() })
+	return n.parts.label, n.parts.count
+}
+
+func (n *Network) findComponents() (label []int32, count int) {
 	label = make([]int32, n.Order())
 	for v := range label {
 		label[v] = -1
